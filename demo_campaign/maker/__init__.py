@@ -1,0 +1,1 @@
+"""Makes the demo campaign: truth, plan, readings, mishaps, tables."""
