@@ -3,9 +3,14 @@
 from __future__ import annotations
 
 from dataclasses import dataclass, fields
-from typing import Any
+from typing import TYPE_CHECKING, Any
 
-from campaign.errors import refused
+from campaign.errors import RecipeError, refused
+
+if TYPE_CHECKING:
+    from collections.abc import Callable
+
+    from sqlalchemy import Connection
 
 
 @dataclass(frozen=True)
@@ -70,3 +75,70 @@ def _bad_range(text: str, name: str) -> Exception:
         value=text,
         expected="LOW:HIGH",
     )
+
+
+def read_filter(
+    connection: Connection,
+    *,
+    electrode: str | None = None,
+    salt: str | None = None,
+    solvents: str | None = None,
+    additives: str | None = None,
+    potential: str | None = None,
+    temperature: str | None = None,
+    since: str | None = None,
+    until: str | None = None,
+    as_of: str | None = None,
+) -> Filter:
+    """Return the filter for the texts of a query's options.
+
+    Raises Refused for an unknown electrode (with near labels), an unreadable recipe part,
+    range or date.
+    """
+    from campaign.chemistry.recipes import additive_key_of, salt_key_of, solvent_key_of
+    from campaign.ledger.selecting import entry_at, require_electrode
+
+    if electrode is not None and as_of is None:
+        require_electrode(connection, electrode)
+    day_end = _day_end(connection, as_of, "as-of") if as_of is not None else None
+    return Filter(
+        electrode=electrode,
+        salt=_key(salt, salt_key_of, "salt"),
+        solvents=_key(solvents, solvent_key_of, "solvents"),
+        additives=_key(additives, additive_key_of, "additives"),
+        potential=None if potential is None else read_range(potential, "potential"),
+        temperature=None if temperature is None else read_range(temperature, "temperature"),
+        since=None if since is None else _instant(connection, since, "since"),
+        until=None if until is None else _day_end(connection, until, "until"),
+        as_of=None if day_end is None else entry_at(connection, day_end),
+    )
+
+
+def _key(text: str | None, canonical: Callable[[str], str], name: str) -> str | None:
+    if text is None:
+        return None
+    try:
+        return canonical(text)
+    except RecipeError as error:
+        raise refused(
+            f"--{name} is '{text}': {error}", column=name, value=text, expected=error.expected
+        ) from None
+
+
+def _instant(connection: Connection, text: str, name: str) -> str:
+    from campaign.ledger.instants import InstantError, format_utc, parse_instant
+    from campaign.ledger.settings import zone
+
+    try:
+        return format_utc(parse_instant(text, zone(connection)).utc)
+    except InstantError as error:
+        raise refused(
+            f"--{name} is '{text}': {error}", column=name, value=text, expected=error.expected
+        ) from None
+
+
+def _day_end(connection: Connection, text: str, name: str) -> str:
+    """Return the last instant of a day in the campaign's zone, or the instant itself."""
+    if len(text.strip()) == 10:
+        return _instant(connection, f"{text.strip()}T23:59:59.999999", name)
+    return _instant(connection, text, name)

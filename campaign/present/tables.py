@@ -1,0 +1,146 @@
+"""Tables for people: framed at a terminal, plain columns when piped, CSV or JSON on request."""
+
+from __future__ import annotations
+
+import csv
+import io
+import json
+import math
+import os
+import shutil
+import sys
+from collections.abc import Callable, Mapping, Sequence
+from dataclasses import dataclass
+from typing import Any
+
+from campaign.present.numbers import number
+
+WIDEST = 100
+
+
+@dataclass(frozen=True)
+class Column:
+    """A column of a table: the key of its value, its heading, how it is shown."""
+
+    key: str
+    heading: str
+    show: Callable[[Any], str] = number
+    right: bool = False
+
+
+def at_terminal() -> bool:
+    """Return whether standard output is a terminal that a person reads."""
+    return sys.stdout.isatty() and os.environ.get("TERM") != "dumb"
+
+
+def show_table(
+    rows: Sequence[Mapping[str, Any]], columns: Sequence[Column], title: str = ""
+) -> None:
+    """Print rows as a table; columns that are empty throughout are left out."""
+    kept = [c for c in columns if any(c.show(row.get(c.key)) for row in rows)]
+    cells = [[c.show(row.get(c.key)) for c in kept] for row in rows]
+    if at_terminal():
+        _framed(cells, kept, title)
+    else:
+        sys.stdout.write(plain(cells, kept, title))
+
+
+def plain(cells: Sequence[Sequence[str]], columns: Sequence[Column], title: str = "") -> str:
+    """Return aligned columns without frame or colour, two spaces apart."""
+    headings = [column.heading for column in columns]
+    widths = [
+        max([len(headings[i]), *(len(row[i]) for row in cells)]) for i in range(len(columns))
+    ]
+    lines = [title] if title else []
+    for line in [headings, *cells]:
+        padded = [
+            text.rjust(width) if column.right else text.ljust(width)
+            for text, width, column in zip(line, widths, columns, strict=True)
+        ]
+        lines.append("  ".join(padded).rstrip())
+    return "\n".join(lines) + "\n"
+
+
+def _framed(cells: Sequence[Sequence[str]], columns: Sequence[Column], title: str) -> None:
+    from rich import box
+    from rich.console import Console
+    from rich.table import Table
+    from rich.text import Text
+
+    width = min(shutil.get_terminal_size((WIDEST, 40)).columns, 160)
+    table = Table(
+        title=Text(title) if title else None,
+        title_justify="left",
+        box=box.HORIZONTALS,
+        pad_edge=False,
+        show_edge=False,
+        header_style="bold",
+    )
+    for index, column in enumerate(columns):
+        numeric = column.right
+        table.add_column(
+            Text(column.heading),
+            justify="right" if numeric else "left",
+            no_wrap=numeric,
+            overflow="fold",
+            min_width=_longest_word(cells, index) if not numeric else None,
+        )
+    for row in cells:
+        table.add_row(*(Text(text) for text in row))
+    Console(width=width, highlight=False).print(table)
+
+
+def _longest_word(cells: Sequence[Sequence[str]], index: int) -> int:
+    """Return the width below which a word of the column would be torn apart (at most 16)."""
+    words = (len(word) for row in cells for word in row[index].split())
+    return min(max(words, default=1), 16)
+
+
+def clean(value: Any) -> Any:
+    """Return plain JSON data: no NaN, no infinity, no NumPy types."""
+    if isinstance(value, Mapping):
+        return {str(key): clean(item) for key, item in value.items()}
+    if isinstance(value, (list, tuple, set, frozenset)):
+        return [clean(item) for item in value]
+    if hasattr(value, "tolist"):
+        return clean(value.tolist())
+    if isinstance(value, float) and not math.isfinite(value):
+        return None
+    return value
+
+
+def show_json(content: object) -> None:
+    """Print content as JSON on standard output."""
+    sys.stdout.write(json.dumps(clean(content), ensure_ascii=False, indent=1) + "\n")
+
+
+# A spreadsheet would run a text that begins like this as a formula.
+_FORMULA = ("=", "+", "-", "@", "\t", "\r")
+
+
+def csv_text(rows: Sequence[Mapping[str, Any]]) -> str:
+    """Return rows as CSV with a header; text that a spreadsheet would run is quoted with '."""
+    names = list(dict.fromkeys(key for row in rows for key in row))
+    stream = io.StringIO()
+    writer = csv.writer(stream, lineterminator="\n")
+    if names:
+        writer.writerow(names)
+    for row in rows:
+        writer.writerow([_csv_cell(row.get(name)) for name in names])
+    return stream.getvalue()
+
+
+def _csv_cell(value: Any) -> Any:
+    value = clean(value)
+    if value is None:
+        return ""
+    if isinstance(value, (dict, list)):
+        return json.dumps(value, ensure_ascii=False)
+    if isinstance(value, str) and value.startswith(_FORMULA):
+        return "'" + value
+    return value
+
+
+def show_csv(rows: Sequence[Mapping[str, Any]]) -> None:
+    """Print rows as CSV on standard output."""
+    sys.stdout.write(csv_text(rows))
