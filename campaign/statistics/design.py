@@ -159,7 +159,7 @@ def _refuse_aliased(columns: Array, centred: Array) -> None:
     if flat.any():
         at = int(np.flatnonzero(flat)[0])
         raise NoContrast(f"column {at + 1} of X does not vary within any stratum")
-    triangle = np.linalg.qr(centred / left, mode="r")
+    triangle: Array = np.linalg.qr(centred / left, mode="r")  # type: ignore[assignment]
     if triangle.shape[0] < p or np.abs(np.diag(triangle)).min() < _ALIASED:
         raise NoContrast("the columns of X cannot be told apart within the strata")
 

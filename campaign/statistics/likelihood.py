@@ -114,14 +114,15 @@ def _inverse(blocks: Array) -> tuple[Array, float]:
     """Return the inverses of (m, q, q) positive blocks and the sum of their ln determinants."""
     if blocks.shape[1] == 1:
         return 1.0 / blocks, float(np.log(blocks).sum())
-    return np.linalg.inv(blocks), float(np.linalg.slogdet(blocks)[1].sum())
+    inverse = np.asarray(np.linalg.inv(blocks), dtype=np.float64)
+    return inverse, float(np.linalg.slogdet(blocks)[1].sum())
 
 
 def _spd_inverse(matrix: Array) -> tuple[Array, float]:
     """Return the inverse and ln determinant of a symmetric positive matrix, scaled first."""
-    scale = 1.0 / np.sqrt(matrix.diagonal())
-    factor = np.linalg.cholesky(scale[:, None] * matrix * scale)
-    half = np.linalg.inv(factor) * scale
+    scale: Array = 1.0 / np.sqrt(matrix.diagonal())
+    factor = np.asarray(np.linalg.cholesky(scale[:, None] * matrix * scale), dtype=np.float64)
+    half = np.asarray(np.linalg.inv(factor), dtype=np.float64) * scale
     return half.T @ half, float(2 * (np.log(factor.diagonal()) - np.log(scale)).sum())
 
 
@@ -192,7 +193,7 @@ class _Pieces:
             info[0, 1 + k] += float((cs * cg[k].T).sum()) - 2 * float((zv2f[:, k, :] * ck).sum())
             for j in range(k + 1):
                 shared = (ck * self.rz[:, j, :]).sum(axis=1)
-                change = float((cg[k] * cg[j].T).sum()) - 2 * float((self.zvz[:, k, j] @ shared))
+                change = float((cg[k] * cg[j].T).sum()) - 2 * float(self.zvz[:, k, j] @ shared)
                 info[1 + k, 1 + j] += change
                 if j != k:
                     info[1 + j, 1 + k] = info[1 + k, 1 + j]

@@ -162,7 +162,7 @@ class MixedFit:
 
 def fit_mixed(
     y: npt.ArrayLike,
-    X: npt.ArrayLike,  # noqa: N803
+    X: npt.ArrayLike,
     specimen: npt.ArrayLike,
     stratum: npt.ArrayLike | None = None,
     known: npt.ArrayLike | None = None,
