@@ -1,0 +1,121 @@
+"""Fits of what differs between specimens: concentration, solvent, additive.
+
+One mixed model for all: stratum fixed effects, random specimen intercept. Where a specimen
+was moved through several cells, each assembly adds its own scatter; the readings are then
+first brought to one effect a cell, so that repeated readings of one assembly count once.
+"""
+
+from __future__ import annotations
+
+import math
+from dataclasses import dataclass
+
+import numpy as np
+import numpy.typing as npt
+
+from campaign.ledger.readings import BoolArray, FloatArray, IntArray
+from campaign.statistics.estimate import Estimate
+from campaign.statistics.mixed import MixedFit, NoContrast, fit_mixed
+from campaign.trends.sample import Sample
+from campaign.trends.strata import combine, levels_per_stratum, means
+
+__all__ = ["BetweenFit", "NoContrast", "fit", "lone"]
+
+NO_STRATUM_CONTRAST = "strata without contrast"
+
+
+@dataclass(frozen=True)
+class BetweenFit:
+    """A fit with columns X: the mixed model, and the scatter of readings [1]."""
+
+    mixed: MixedFit
+    sigma_within: float
+    by_cell: bool
+
+    @property
+    def sigma_between(self) -> float:
+        """Return the scatter between specimens [1], NaN where it cannot be told."""
+        return float(self.mixed.sigma_between)
+
+    def contrast(self, c: FloatArray) -> Estimate:
+        """Return the estimate of c'beta."""
+        return self.mixed.contrast(c)
+
+
+def lone(stratum: IntArray, level: IntArray) -> BoolArray:
+    """Return which readings [n] stand in a stratum that holds one level only."""
+    return np.asarray(levels_per_stratum(stratum, level) < 2, np.bool_)
+
+
+def fit(s: Sample, X: npt.ArrayLike, stratum: IntArray) -> BetweenFit:
+    """Fit ln R of the sample on the columns X (n, p). Raises NoContrast."""
+    if len(s) < 2:
+        raise NoContrast("fewer than two readings")
+    columns = np.asarray(X, np.float64).reshape(len(s), -1)
+    specimen = combine(s.c.specimen)
+    codes = combine(stratum)
+    if not moved(s):
+        mixed = fit_mixed(s.y, columns, specimen, codes, known=s.known)
+        return BetweenFit(mixed, float(mixed.sigma_within), False)
+    effects = _cell_effects(s, codes)
+    averaged = np.stack([means(column, effects.cell) for column in columns.T], axis=1)
+    mixed = fit_mixed(
+        effects.value, averaged, combine(specimen[effects.first]), effects.component,
+        known=effects.variance,
+    )  # fmt: skip
+    return BetweenFit(mixed, effects.sigma_within, True)
+
+
+def moved(s: Sample) -> bool:
+    """Return True where a specimen was measured in more than one cell."""
+    pairs = np.unique(np.stack([s.c.specimen, s.c.cell]), axis=1)
+    return len(np.unique(pairs[0])) < pairs.shape[1]
+
+
+@dataclass(frozen=True)
+class _CellEffects:
+    """One effect for each cell and component of linked strata.
+
+    cell [n]: code of the effect a reading belongs to; first: a reading of each effect.
+    """
+
+    value: FloatArray
+    variance: FloatArray
+    component: IntArray
+    cell: IntArray
+    first: IntArray
+    sigma_within: float
+
+
+def _cell_effects(s: Sample, stratum: IntArray) -> _CellEffects:
+    """Return least-squares cell effects, strata taken out, with their reading variance."""
+    component = _linked(s.c.cell, stratum)
+    cell = combine(component, s.c.cell)
+    n_cells, n_strata = int(cell.max()) + 1, int(stratum.max()) + 1
+    table = np.bincount(cell * n_strata + stratum, minlength=n_cells * n_strata)
+    table = table.reshape(n_cells, n_strata).astype(np.float64)
+    per_cell, per_stratum = table.sum(axis=1), table.sum(axis=0)
+    # least squares with the strata eliminated; lstsq leaves the free level of a component
+    left = np.diag(per_cell) - table / per_stratum @ table.T
+    right = np.bincount(cell, s.y) - table @ means(s.y, stratum)
+    effect, _, rank, _ = np.linalg.lstsq(left, right, rcond=1e-10)
+    rest = s.y - effect[cell]
+    rest = rest - means(rest, stratum)[stratum]
+    free = len(s) - n_strata - int(rank)
+    variance = float(rest @ rest) / free if free > 0 else 0.0
+    first = np.unique(cell, return_index=True)[1]
+    return _CellEffects(
+        effect, variance / per_cell, combine(component[first]), cell,
+        first.astype(np.int64), math.sqrt(variance) if free > 0 else math.nan,
+    )  # fmt: skip
+
+
+def _linked(cell: IntArray, stratum: IntArray) -> IntArray:
+    """Return a code [n], equal for readings whose cells are linked by shared strata."""
+    from scipy.sparse import coo_array
+    from scipy.sparse.csgraph import connected_components
+
+    n_cells = int(cell.max()) + 1
+    size = n_cells + int(stratum.max()) + 1
+    graph = coo_array((np.ones(len(cell)), (cell, n_cells + stratum)), shape=(size, size))
+    return np.asarray(connected_components(graph, directed=False)[1], np.int64)[cell]

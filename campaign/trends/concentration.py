@@ -1,0 +1,228 @@
+"""Concentration: the reaction order m = -d ln R / d ln c.
+
+One estimate for each electrode, salt, solvents, additives and basis; strata hold temperature
+and the state of the electrode.
+"""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Sequence
+from dataclasses import dataclass, replace
+
+import numpy as np
+
+from campaign.ledger.criteria import Criteria
+from campaign.ledger.readings import FloatArray, IntArray, Snapshot
+from campaign.statistics.estimate import Estimate
+from campaign.trends import between, confounding, heterogeneity, levels
+from campaign.trends.bases import in_activity
+from campaign.trends.between import BetweenFit, NoContrast
+from campaign.trends.conditions import electrodes
+from campaign.trends.findings import Contrast, Finding
+from campaign.trends.outliers import outliers
+from campaign.trends.response import unit
+from campaign.trends.results import (
+    Adjusted,
+    AxisResult,
+    LeftOut,
+    LevelRatio,
+    OrderEstimate,
+    decision_text,
+)
+from campaign.trends.sample import SERIES, Sample, attempt, draw, series, source
+from campaign.trends.strata import combine
+
+SAME_LEVEL = 0.005
+"""Concentrations within 0.5 % are one level."""
+
+
+@dataclass(frozen=True)
+class OrderFit:
+    """What a fit of the order leaves: sample used, fit, finding, levels and adjustment."""
+
+    sample: Sample
+    fit: BetweenFit
+    finding: Finding
+    levels: tuple[float, ...]
+    adjusted: Adjusted | None
+
+
+def estimate(
+    snapshot: Snapshot,
+    criteria: Criteria,
+    response: str = "R_ct",
+    *,
+    porous: bool = True,
+    scale: str | None = None,
+    activity: bool = False,
+) -> AxisResult:
+    """Return the reaction order of every series of the campaign.
+
+    porous, scale: see `sample.draw` and `conditions.condition`. activity: the order in the
+    activity, where mean activity coefficients are tabulated for the electrolytes.
+    Raises Refused for an unknown response.
+    """
+    found: list[OrderEstimate] = []
+    left: list[LeftOut] = []
+    for electrode in electrodes(snapshot):
+        whole = draw(snapshot, source(snapshot, criteria, electrode, scale), response, porous)
+        left += whole.left_out
+        for held, part in series(replace(whole, left_out=())):
+            try:
+                fitted = attempt(part, lambda s: order(s, criteria, (), activity))
+                found.append(_record(fitted, held, criteria, activity))
+            except NoContrast as reason:
+                where = {name: held[name] for name in ("salt", "solvents", "additives")}
+                left.append(LeftOut(str(reason), len(part), electrode, **where))
+    return AxisResult(
+        "concentration", response, unit(response), tuple(found), left_out=tuple(left)
+    )
+
+
+def order(
+    s: Sample, criteria: Criteria, held: Sequence[str] = SERIES, activity: bool = False
+) -> OrderFit:
+    """Fit the common order within strata of temperature, state and the `held` columns.
+
+    Raises NoContrast with a reason where no stratum holds two concentrations.
+    """
+    s, x = in_activity(s) if activity else (s, np.log(s.c.concentration))
+    if not len(s):
+        raise NoContrast(f"no readings with {s.response}")
+    level, centres = levels.group_levels(np.log(s.c.concentration), SAME_LEVEL)
+    if len(centres) < 2:
+        raise NoContrast(f"one concentration only ({math.exp(centres[0]):.4g})")
+    stratum = combine(s.c.temperature, s.state, *(getattr(s.c, name) for name in held))
+    keep = between.lone(stratum, level)
+    if keep.all():
+        raise NoContrast("no stratum holds two concentrations under equal conditions")
+    s = s.leaving(keep, between.NO_STRATUM_CONTRAST)
+    x, level, stratum = x[~keep], combine(level[~keep]), combine(stratum[~keep])
+    centres = np.array([x[level == i].mean() for i in range(int(level.max()) + 1)])
+    group = combine(*(getattr(s.c, name) for name in held)) if held else np.zeros_like(level)
+    fitted = between.fit(s, x[:, None], stratum)
+    return _judge(s, fitted, _Parts(x, level, centres, stratum, group, tuple(held)), criteria)
+
+
+@dataclass(frozen=True)
+class _Parts:
+    """Columns of the order fit: x = ln c, its levels, strata, and series codes `group`."""
+
+    x: FloatArray
+    level: IntArray
+    centres: FloatArray
+    stratum: IntArray
+    group: IntArray
+    held: tuple[str, ...]
+
+
+def _judge(s: Sample, fitted: BetweenFit, p: _Parts, criteria: Criteria) -> OrderFit:
+    """Return the fit with its finding: contrasts, heterogeneity, confounding, warnings."""
+    slope = _negative(fitted.contrast(np.ones(1)))
+    contrasts, p_line = _levels(s, p)
+    warnings = list(s.warnings)
+    if s.n_specimens == 1:
+        warnings.append("one specimen: no interval between specimens")
+    elif not math.isfinite(slope.se):
+        warnings.append("one specimen a condition: no interval between specimens")
+    if p_line is not None and p_line < criteria.heterogeneity_p:
+        warnings.append(f"ln R is not a straight line over ln c (lack of fit, p = {p_line:.2g})")
+    split = _splits(s, slope.value, p, criteria)
+    warnings += [f"orders differ between strata: {one.text}" for one in split]
+    apart = next((one for one in split if one.apart), None)
+    confounders = confounding.between_cells(s, p.x[:, None], p.stratum, criteria)
+    warnings += [one.warning("concentration") for one in confounders]
+    finding = Finding(
+        "concentration", s.response, s.n_specimens, len(s), slope, criteria.order_margin,
+        contrasts, math.log(criteria.ratio_margin), n_levels=len(p.centres),
+        open_because=s.open_because or s.pore_open
+        or (f"strata differ, {apart.text}" if apart else None),
+        confounded=bool(confounders), warnings=tuple(warnings),
+    )  # fmt: skip
+    adjusted = _adjusted(s, p, confounders[0]) if confounders else None
+    return OrderFit(s, fitted, finding, tuple(np.exp(p.centres).tolist()), adjusted)
+
+
+def _negative(e: Estimate) -> Estimate:
+    return Estimate(-e.value, e.se, e.df)
+
+
+def _levels(s: Sample, p: _Parts) -> tuple[tuple[Contrast, ...], float | None]:
+    """Return level-to-level differences of ln R and the p value of lack of fit."""
+    names = [f"{math.exp(centre):.6g}" for centre in p.centres]
+    fitted = levels.fit_levels(s, p.level, p.stratum)
+    contrasts = levels.all_pairs(fitted, names)
+    return contrasts, heterogeneity.lack_of_fit(fitted, contrasts, p.centres)
+
+
+def _splits(
+    s: Sample, slope: float, p: _Parts, criteria: Criteria
+) -> list[heterogeneity.Split]:
+    """Return the significant differences of the order between strata."""
+    margin = criteria.order_margin
+    found = []
+    if p.held:
+        first = np.unique(p.group, return_index=True)[1]
+
+        def name(code: int) -> str:
+            at = int(first[code])
+            return " / ".join(
+                s.c.name(c, int(getattr(s.c, c)[at])) for c in ("salt", "solvents", "additives")
+            )
+
+        found.append(heterogeneity.order_by_group(s, p.x, p.stratum, p.group, margin, name))
+    found += heterogeneity.within_axes(
+        s, -p.x[:, None], p.group, np.array([slope]), margin, ["order {:.2f}"]
+    )
+    return [one for one in found if one is not None and one.p < criteria.heterogeneity_p]
+
+
+def _adjusted(s: Sample, p: _Parts, confounder: confounding.Confounder) -> Adjusted:
+    """Return the order with the confounder's column held."""
+    try:
+        X = np.stack([p.x, confounder.column], axis=1)
+        value = _negative(between.fit(s, X, p.stratum).contrast(np.array([1.0, 0.0])))
+    except NoContrast:
+        return Adjusted(confounder.name, math.nan, None)
+    return Adjusted(confounder.name, value.value, value.interval())
+
+
+def _record(
+    fitted: OrderFit, held: dict[str, str], criteria: Criteria, activity: bool
+) -> OrderEstimate:
+    s, finding = fitted.sample, fitted.finding
+    slope = finding.slope
+    assert slope is not None
+    alpha = criteria.error_probability
+    return OrderEstimate(
+        electrode=s.electrode,
+        **held,
+        order=slope.value,
+        order_ci=slope.interval(1.0 - alpha),
+        df=slope.df if math.isfinite(slope.se) else math.nan,
+        n_specimens=s.n_specimens,
+        n_measurements=len(s),
+        sigma_between=fitted.fit.sigma_between,
+        sigma_within=fitted.fit.sigma_within,
+        decision=decision_text(finding, alpha),
+        warnings=finding.warnings,
+        flagged_se=int(s.filled.sum()),
+        left_out=s.left_out,
+        rows=tuple(s.c.measurement.tolist()),
+        adjusted=fitted.adjusted,
+        outliers=outliers(s, fitted.fit),
+        finding=finding,
+        levels=fitted.levels,
+        ratios=tuple(
+            LevelRatio(c.a, c.b, math.exp(c.estimate.value), exponential(c.estimate, alpha))
+            for c in finding.contrasts
+        ),
+        in_activity=activity,
+    )
+
+
+def exponential(e: Estimate, alpha: float) -> tuple[float, float] | None:
+    """Return the interval of a ratio from the estimate of its logarithm."""
+    interval = e.interval(1.0 - alpha)
+    return None if interval is None else (math.exp(interval[0]), math.exp(interval[1]))

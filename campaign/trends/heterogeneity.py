@@ -1,0 +1,223 @@
+"""Do the strata agree? Interaction of the axis with what is held, and lack of fit.
+
+A significant interaction alone changes nothing; only when strata fall on different sides
+of a margin is the electrode's decision left open and the split named.
+"""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Callable, Iterator, Sequence
+from dataclasses import dataclass
+
+import numpy as np
+
+from campaign.ledger.readings import FloatArray, IntArray
+from campaign.statistics.estimate import Estimate
+from campaign.trends import between, levels
+from campaign.trends.between import NoContrast
+from campaign.trends.findings import Contrast
+from campaign.trends.sample import Sample
+from campaign.trends.strata import centred, combine
+
+Named = Callable[[int], str]
+
+
+@dataclass(frozen=True)
+class Split:
+    """A significant difference between strata: its p value and what it says.
+
+    apart: the strata fall on different sides of the margin.
+    """
+
+    p: float
+    apart: bool
+    text: str
+
+
+def zone(value: float, margin: float) -> int:
+    """Return on which side of +-margin a value lies: -1, 0 or 1."""
+    return int(value > margin) - int(value < -margin)
+
+
+def wald(estimates: FloatArray, cov: FloatArray, df: float) -> float:
+    """Return the p value of all `estimates` (k,) being zero, by F with k and df.
+
+    cov (k, k) is their covariance. NaN where there are no degrees of freedom.
+    """
+    from scipy.special import fdtrc
+
+    rank = int(np.linalg.matrix_rank(cov)) if np.isfinite(cov).all() else 0
+    if rank == 0 or not df > 0:
+        return math.nan
+    statistic = float(estimates @ np.linalg.pinv(cov, hermitian=True) @ estimates) / rank
+    return float(fdtrc(rank, df, max(statistic, 0.0)))
+
+
+def _equal(fit: between.BetweenFit, rows: FloatArray) -> tuple[float, list[Estimate]]:
+    """Return p of the contrasts `rows` (k, p) being equal, and the k estimates."""
+    differences = rows[1:] - rows[0]
+    single = [fit.contrast(row) for row in rows]
+    apart, cov = fit.mixed.contrasts(differences)
+    df = min((e.df for e in apart if math.isfinite(e.se)), default=0.0)
+    values = np.array([e.value for e in apart])
+    return wald(values, cov, df), single
+
+
+def order_by_group(
+    s: Sample, x: FloatArray, stratum: IntArray, group: IntArray, margin: float, name: Named
+) -> Split | None:
+    """Test whether the slope -d ln R/dx [1] is the same in every group of strata."""
+    inside = centred(x, stratum)
+    spread = np.bincount(group, inside**2)
+    groups = np.flatnonzero(spread > 1e-12)
+    if len(groups) < 2:
+        return None
+    keep = np.isin(group, groups)
+    part, held, codes = s.take(keep), stratum[keep], combine(group[keep])
+    X = (codes[:, None] == np.arange(len(groups))[None, :]) * x[keep, None]
+    try:
+        fit = between.fit(part, X, held)
+        p, slopes = _equal(fit, -np.eye(len(groups)))
+    except NoContrast:
+        return None
+    return _split(
+        p, [e.value for e in slopes], margin, [name(int(g)) for g in groups], "order {:.2f}"
+    )
+
+
+def ratio_by_group(
+    s: Sample, level: IntArray, stratum: IntArray, group: IntArray, margin: float, name: Named,
+    names: Sequence[str],
+) -> Split | None:  # fmt: skip
+    """Test whether level differences of ln R are the same in every group of strata."""
+    if int(group.max()) == 0:
+        return None
+    n_levels = int(level.max()) + 1
+    both = group * n_levels + level
+    try:
+        fitted = levels.fit_levels(s, both, stratum)
+    except NoContrast:
+        return None
+    pairs: dict[tuple[int, int], list[tuple[int, FloatArray]]] = {}
+    for linked in fitted.groups:
+        base = linked[0]
+        for one in linked[1:]:
+            key = (base % n_levels, one % n_levels)
+            pairs.setdefault(key, []).append((one // n_levels, fitted.row(one, base)))
+    worst: Split | None = None
+    for (a, b), found in pairs.items():
+        if len(found) < 2:
+            continue
+        p, values = _equal(fitted.fit, np.array([row for _, row in found]))
+        text = f"R({names[b]})/R({names[a]}) " + "{:.2f}"
+        split = _split(
+            min(1.0, p * len(pairs)), [e.value for e in values], margin,
+            [name(g) for g, _ in found], text, math.exp,
+        )  # fmt: skip
+        if split and (worst is None or split.p < worst.p):
+            worst = split
+    return worst
+
+
+def _split(
+    p: float, values: list[float], margin: float, names: list[str], text: str,
+    shown: Callable[[float], float] = float,
+) -> Split:  # fmt: skip
+    low, high = int(np.argmin(values)), int(np.argmax(values))
+    apart = len({zone(value, margin) for value in values}) > 1
+    said = " and ".join(f"{text.format(shown(values[i]))} at {names[i]}" for i in (low, high))
+    return Split(p, apart, f"{said} (p = {p:.2g})")
+
+
+def along(
+    s: Sample, columns: FloatArray, held: IntArray, z: FloatArray, other: IntArray
+) -> tuple[FloatArray, FloatArray, float] | None:
+    """Return how the effect of the axis columns (n, k) changes along z within specimens.
+
+    Each specimen's own slope on z (within `other` strata) is compared between specimens, so
+    that repeated readings cannot make a difference significant. Returns the change per unit
+    of z (k,), its covariance and degrees of freedom; None where it cannot be told.
+    """
+    unit = combine(s.c.specimen, s.c.cell)
+    inside = combine(unit, other)
+    dz, dy = centred(z, inside), centred(s.y, inside)
+    square = np.bincount(unit, dz**2)
+    usable = square > 1e-3 * float(square.max(initial=0.0))
+    if usable.sum() < columns.shape[1] + 2:
+        return None
+    slope = np.bincount(unit, dz * dy)[usable] / square[usable]
+    first = np.unique(unit, return_index=True)[1][usable]
+    groups = combine(held[first])
+    X = np.stack([centred(column[first], groups) for column in columns.T], axis=1)
+    slope = centred(slope, groups)
+    df = len(slope) - int(groups.max()) - 1 - X.shape[1]
+    if df < 1 or np.linalg.matrix_rank(X) < X.shape[1]:
+        return None
+    inverse = np.linalg.inv(X.T @ X)
+    change = inverse @ (X.T @ slope)
+    rest = slope - X @ change
+    return change, inverse * float(rest @ rest) / df, float(df)
+
+
+def within_axes(
+    s: Sample, columns: FloatArray, held: IntArray, effects: FloatArray, margin: float,
+    texts: Sequence[str], shown: Callable[[float], float] = float,
+) -> list[Split]:  # fmt: skip
+    """Test whether the axis effects (k,) change along temperature and along potential.
+
+    columns (n, k): the axis; held [n]: series; texts (k,): how an effect is written.
+    """
+    found = []
+    for z, other, unit in _held_numbers(s):
+        change = along(s, columns, held, z, other)
+        if change is not None:
+            found.append(_changed(change, z, effects, margin, unit, texts, shown))
+    return found
+
+
+def _held_numbers(s: Sample) -> Iterator[tuple[FloatArray, IntArray, str]]:
+    """Yield temperature and potential where they vary, with what else to hold inside."""
+    if len(np.unique(s.c.temperature)) > 1 and np.isfinite(s.c.temperature_K).all():
+        yield s.c.temperature_K, s.state, "K"
+    if len(np.unique(s.state)) > 1:
+        for z in (s.c.offset_V, s.c.x_V):
+            if np.isfinite(z).all():
+                yield z, combine(s.c.temperature, s.c.scale), "V"
+                return
+
+
+def _changed(
+    change: tuple[FloatArray, FloatArray, float], z: FloatArray, effects: FloatArray,
+    margin: float, unit: str, texts: Sequence[str], shown: Callable[[float], float],
+) -> Split:  # fmt: skip
+    per_unit, cov, df = change
+    ends = float(z.min()), float(z.max())
+    at = [effects + per_unit * (end - float(z.mean())) for end in ends]
+    worst = int(np.argmax(np.abs(per_unit)))
+    apart = any(
+        zone(float(a), margin) != zone(float(b), margin) for a, b in zip(*at, strict=True)
+    )
+    p = wald(per_unit, cov, df)
+    said = " and ".join(
+        f"{texts[worst].format(shown(float(effect[worst])))} at {end:.4g} {unit}"
+        for effect, end in zip(at, ends, strict=True)
+    )
+    return Split(p, apart, f"{said} (p = {p:.2g})")
+
+
+def lack_of_fit(
+    fitted: levels.LevelFit, contrasts: Sequence[Contrast], values: FloatArray
+) -> float | None:
+    """Return p of the level effects lying on a straight line over `values`, None if untestable."""
+    if len(fitted.groups) != 1 or len(fitted.groups[0]) < 3:
+        return None
+    group = fitted.groups[0]
+    base = group[0]
+    rows = np.array([fitted.row(one, base) for one in group[1:]])
+    estimates, cov = fitted.fit.mixed.contrasts(rows)
+    x = values[list(group[1:])] - values[base]
+    # directions orthogonal to the line through the base level
+    rest = np.linalg.svd(x[:, None])[0][:, 1:].T
+    df = min((c.estimate.df for c in contrasts if math.isfinite(c.estimate.se)), default=0.0)
+    return wald(rest @ np.array([e.value for e in estimates]), rest @ cov @ rest.T, df)
