@@ -21,10 +21,10 @@ from campaign.kinetics.cpe import time_constant
 
 FloatArray = npt.NDArray[np.float64]
 
-_REACH = 40.0  # weights beyond e^-40 do not matter
+_REACH = 30.0  # weights beyond e^-30 do not matter
 _SMALL_EXPONENT = 0.7
-_STEP_SMALL = 0.16
-_STEP_LARGE = 0.125
+_STEP_SMALL = 0.25  # error e^(-2 pi 1.35/0.25), 1.35 the distance of the nearest singularity
+_STEP_LARGE = 0.2  # error e^(-2 pi 1.1/0.2)
 _CHUNK = 4096
 
 
