@@ -88,9 +88,7 @@ def _assess(
     strict = alpha / max(1, len(step.required))
     results = [_hold(one, evidence, alpha, strict) for one in step.predictions]
     missing_arc = bool(step.needs_arc) and step.needs_arc in absent
-    opposing = [
-        _sentence(one, evidence, alpha, strict, "against") for one in results if one.against
-    ]
+    opposing = [_sentence(one, evidence, alpha, "against") for one in results if one.against]
     if missing_arc:
         opposing.insert(0, f"the {step.needs_arc} arc was looked for and is absent")
     required = [one for one in results if one.prediction.required]
@@ -170,7 +168,6 @@ def _sentence(
     result: _Result,
     evidence: Evidence,
     alpha: float,
-    strict: float,
     side: Literal["for", "against"],
 ) -> str:
     axes = result.confirmed if side == "for" else result.against
