@@ -385,7 +385,8 @@ def crossings(
 ) -> tuple[Crossing, ...]:
     """Return the times at which two terms' mean contributions cross, in order of time.
 
-    Looked for from 1e-4 to 1e6 s; each is refined by linear interpolation in ln t.
+    Looked for from 1e-4 to 1e6 s; each is refined by linear interpolation of the
+    logarithms.
     """
     values = _specimens(readings, terms_of(readings), condition)
     curves = {}
@@ -405,7 +406,8 @@ def crossings(
 
 
 def _pair_crossings(curves: Mapping[str, FloatArray], a: str, b: str) -> list[Crossing]:
-    gap = curves[a] - curves[b]
+    both = (curves[a] > 0) & (curves[b] > 0)
+    gap = np.log(np.where(both, curves[a], 1.0)) - np.log(np.where(both, curves[b], 1.0))
     logs = np.log(TIMES_s)
     found = []
     for k in np.flatnonzero(np.sign(gap[:-1]) * np.sign(gap[1:]) < 0):

@@ -111,5 +111,5 @@ def arc_response(
     if known.any():
         tau = time_constant(r[known], q[known], n[known])
         argument = (t[known] / tau) ** n[known]
-        result[known] = r[known] * (1 - mittag_leffler(n[known], argument))
+        result[known] = r[known] * np.clip(1 - mittag_leffler(n[known], argument), 0, 1)
     return result
