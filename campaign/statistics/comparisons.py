@@ -255,10 +255,12 @@ def _chi_grid(df: float) -> tuple[Array, Array]:
     if math.isinf(df):
         return np.ones(1), np.ones(1)
 
-    # ln density of x = ln s, up to a constant: df (x - e^(2x)/2), highest at x = 0
-    width = 9.0 / math.sqrt(2 * df)
-    left = max(width, 36.0 / df)
-    x = np.linspace(-left, min(width, 0.5 * math.log(1 + 80 / df) + 0.5 / df), 301)
+    # ln density of x = ln s is df (x - e^(2x)/2 + 1/2) below its top at x = 0, which is about
+    # -df x^2 near the top, df x far on the left; the ends lie where it has fallen by 36
+    width = 6.4 / math.sqrt(df)
+    left = 1.5 * width if df > 50 else max(width, 36.0 / df + 0.5)
+    right = min(width, 0.5 * math.log(1 + 80 / df + 2 * width))
+    x = np.linspace(-left, right, 301)
     log_density = df * (x - 0.5 * np.exp(2 * x) + 0.5)
     density = np.exp(log_density)
     return np.exp(x), density / density.sum()

@@ -130,17 +130,29 @@ def _fit(values: Array, errors: Array, x: Array) -> tuple[Array, Array, float, f
     if not np.isfinite(errors).all():
         errors = np.zeros(values.size)
     k, p = x.shape
-    rest = values - x @ np.linalg.lstsq(x, values, rcond=None)[0]
+    plain = np.asarray(np.linalg.lstsq(x, values, rcond=None)[0], dtype=np.float64)
+    rest = values - x @ plain
     scale = float(rest @ rest) / (k - p) + float(errors.mean())
     if scale <= 1e-24 * max(1.0, float(np.abs(values).max()) ** 2):
-        means = np.linalg.lstsq(x, values, rcond=None)[0]
-        return means, np.zeros((p, p)), 0.0, 0.0
+        return plain, np.zeros((p, p)), 0.0, 0.0
     tau2 = scale * _reml(rest / math.sqrt(scale), errors / scale, x)
+    means, cov, q = hartung_knapp(values, errors, x, tau2)
+    return means, cov, math.sqrt(tau2), q
+
+
+def hartung_knapp(
+    values: Array, errors: Array, x: Array, tau2: float
+) -> tuple[Array, Array, float]:
+    """Return weighted means (p,), their covariance with the factor max(1, q), and q [2, 3].
+
+    values, errors (k,): effects and their variances; x (k, p): design; tau2: scatter between.
+    """
+    k, p = x.shape
     weight = 1.0 / (errors + tau2)
     inverse = np.asarray(np.linalg.inv((x.T * weight) @ x), dtype=np.float64)
     means = inverse @ (x.T * weight) @ values
     q = float(weight @ (values - x @ means) ** 2) / (k - p)
-    return means, max(1.0, q) * inverse, math.sqrt(tau2), q
+    return means, max(1.0, q) * inverse, q
 
 
 def _reml(values: Array, errors: Array, x: Array) -> float:

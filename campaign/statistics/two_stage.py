@@ -107,8 +107,8 @@ def _fit(y: Array, x: Array, of: Codes, cell: Codes, weight: Array) -> _Fit:
     total = np.bincount(cell, weight)
     xc = x - (np.bincount(cell, weight * x) / total)[cell]
     yc = y - (np.bincount(cell, weight * y) / total)[cell]
-    sxx = np.bincount(of, weight * xc**2)
-    slope = np.bincount(of, weight * xc * yc) / sxx
+    sxx: Array = np.bincount(of, weight * xc**2).astype(np.float64)
+    slope: Array = np.bincount(of, weight * xc * yc) / sxx
     return _Fit(slope, sxx, yc - slope[of] * xc)
 
 
