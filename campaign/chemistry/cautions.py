@@ -6,7 +6,9 @@ from __future__ import annotations
 SENTENCES = {
     "oxidiser": "perchlorate, a strong oxidiser: may explode with organics when dried or heated",
     "oxidiser_salt": "an oxidiser: keep away from combustible material and reducing agents",
-    "fluoride": "gives hydrogen fluoride (HF) with moisture or heat: keep dry, have HF first aid ready",
+    "fluoride": (
+        "gives hydrogen fluoride (HF) with moisture or heat: keep dry and have HF first aid ready"
+    ),
     "arsenic": "contains arsenic: very toxic, and carcinogenic after decomposition",
     "corrosive": "corrosive to skin and eyes",
     "toxic": "toxic",

@@ -1,8 +1,9 @@
 """The grammar of a recipe: salts, the solvent blend, additives, in the order papers write them.
 
     recipe    = salt { "+" salt } ("in" | "/" | "aq") blend { ("+" | "with" | ",") additive }
-    salt      = AMOUNT NAME
+    salt      = AMOUNT NAME | NAME "(" AMOUNT ")"
     blend     = [RATIO [BASIS]] NAME { (":" | "/" | "+" | "-" | "and") NAME } [RATIO [BASIS]]
+              | PERCENTAGE NAME { "+" PERCENTAGE NAME }   until they add up to 100 %
     additive  = AMOUNT NAME | NAME "(" AMOUNT ")"
 
 Reading keeps what was written and where; the canonical form is made in `recipes`.
@@ -14,25 +15,32 @@ import re
 from dataclasses import dataclass
 from fractions import Fraction
 
-from campaign.chemistry.scanner import (
+from campaign.chemistry.amounts import (
     EXPECT_AMOUNT,
-    EXPECT_BASIS,
+    MASS,
+    MOLE,
     PERCENTAGES,
+    VOLUME,
     Amount,
-    Name,
-    Scanner,
 )
+from campaign.chemistry.naming import Name
+from campaign.chemistry.scanner import EXPECT_BASIS, Scanner
+from campaign.errors import RecipeError
 
 _AND = re.compile(r" ?(?:\+|&|,|;| and (?:with )?| plus )(?: ?and )? ?", re.IGNORECASE)
-_WITH = re.compile(r" ?,? ?(?:with|containing|\+)(?: an| the)?(?: additives?:?)? ", re.IGNORECASE)
-_IN = re.compile(r" (?:dissolved |solution )?in(?: an?| the)?(?![A-Za-z0-9]) ?", re.IGNORECASE)
-_MIXTURE = re.compile(r"(?:mixture|blend) of ", re.IGNORECASE)
+_WITH = re.compile(r" ?,? ?(?:with|containing|\+)(?:(?: an| the)? additives?:?)? ", re.IGNORECASE)
+_IN = re.compile(r" (?:dissolved |solution )?in(?![A-Za-z0-9]) ?", re.IGNORECASE)
+_MIXTURE = re.compile(r"(?:(?:an?|the) )?(?:mixture|blend) of ", re.IGNORECASE)
+_ARTICLE = re.compile(r"an? (?=[0-9])")
 _AQUEOUS = re.compile(r" ?(?:\( ?aq\.? ?\)|(?<= )aq(?![A-Za-z0-9])\.?)", re.IGNORECASE)
 _OF = re.compile(r" ?(?:of )?", re.IGNORECASE)
 _TAIL = re.compile(r"(?: as)?(?: an)? additives?(?![A-Za-z0-9])", re.IGNORECASE)
 _LEAD = re.compile(r" ?(?:(?:=|in a|in|at|of) ?)?", re.IGNORECASE)
 _RATIO_OF = re.compile(r" ?[=,]? ?")
 _NEXT_BASIS = re.compile(r" ?[,/]? ?")
+
+
+_BLEND_BASIS = {VOLUME: "v/v", MASS: "w/w", MOLE: "mol/mol"}
 
 
 @dataclass(frozen=True)
@@ -66,7 +74,7 @@ class Written:
 def read_recipe(scanner: Scanner, water: Name) -> Written:
     """Read a whole recipe. `water` is the solvent that 'aq' stands for."""
     if scanner.at_end():
-        raise scanner.fault("the recipe is empty", 0, "a recipe such as '1 M NaPF6 in PC'")
+        raise RecipeError("an empty recipe; expected one such as '1 M NaPF6 in PC'", 0, "a recipe")
     entries = _read_solutes(scanner)
     if scanner.take(_AQUEOUS):
         blend = Blend((water,), (), None, scanner.position)
@@ -79,14 +87,18 @@ def read_recipe(scanner: Scanner, water: Name) -> Written:
     if not salts:
         raise scanner.fault("no salt", entries[0].amount.start, "a salt such as '1 M NaPF6'")
     additives.extend(_read_additives(scanner))
-    _finish(scanner, "'+' and an additive, or the end,")
+    more = "':' and a solvent, " if len(blend.names) == 1 and not additives else ""
+    _finish(scanner, f"{more}'+' and an additive, or the end")
     return Written(tuple(salts), blend, tuple(additives))
 
 
 def read_blend(scanner: Scanner) -> Blend:
     """Read a solvent blend with its ratio before or behind the names."""
-    scanner.take(_MIXTURE)
+    if not scanner.take(_MIXTURE):
+        scanner.take(_ARTICLE)
     start, parts, basis = scanner.position, [], None
+    if scanner.peek_amount(start) or scanner.name_then_amount(start):
+        return _read_percentages(scanner)
     if scanner.peek_ratio():
         parts, basis = scanner.ratio(), _read_basis(scanner)
         scanner.skip_space()
@@ -101,10 +113,35 @@ def read_blend(scanner: Scanner) -> Blend:
     return Blend(tuple(names), tuple(parts), basis, start)
 
 
+def _read_percentages(scanner: Scanner) -> Blend:
+    """Read '30 vol% EC + 70 vol% DMC' or 'EC (30 vol%) + DMC (70 vol%)'."""
+    start, entries, total = scanner.position, [_read_additive(scanner)], Fraction(0)
+    while (total := total + _percentage(scanner, entries)) < 100:
+        if not (scanner.take(_AND) or scanner.take_mark(":/")):
+            raise scanner.fault(
+                f"the solvents add up to {float(total):.6g} %", start, "solvents of 100 % together"
+            )
+        entries.append(_read_additive(scanner))
+    if total > 100:
+        raise scanner.fault(
+            f"the solvents add up to {float(total):.6g} %", start, "solvents of 100 % together"
+        )
+    basis = None if entries[0].amount.remark else _BLEND_BASIS[entries[0].amount.unit]
+    parts = tuple(entry.amount.value for entry in entries)
+    return Blend(tuple(entry.name for entry in entries), parts, basis, start)
+
+
+def _percentage(scanner: Scanner, entries: list[Entry]) -> Fraction:
+    first, last = entries[0].amount, entries[-1].amount
+    if last.unit not in PERCENTAGES or (last.unit, last.remark) != (first.unit, first.remark):
+        raise scanner.fault("solvents on two bases", last.start, "vol%, wt% or mol% throughout")
+    return last.value
+
+
 def read_additives(scanner: Scanner) -> tuple[Entry, ...]:
     """Read additives alone: '2 wt% FEC + 1 vol% VC'."""
     entries = [_read_additive(scanner), *_read_additives(scanner)]
-    _finish(scanner, "'+' and an additive, or the end,")
+    _finish(scanner, "'+' and an additive, or the end")
     return tuple(entries)
 
 
@@ -112,10 +149,10 @@ def read_salts(scanner: Scanner) -> tuple[list[Name], list[Fraction], int]:
     """Read salts alone: 'NaPF6:NaTFSI (0.8:0.2)' or '0.8 M NaPF6 + 0.2 M NaTFSI'."""
     if scanner.peek_amount(scanner.position):
         entries = _read_solutes(scanner)
-        _finish(scanner, "'+' and a salt, or the end,")
+        _finish(scanner, "'+' and a salt, or the end")
         return [e.name for e in entries], [e.amount.value for e in entries], 0
     blend = read_blend(scanner)
-    _finish(scanner, "a ratio such as (0.8:0.2), or the end,")
+    _finish(scanner, "a ratio such as (0.8:0.2), or the end")
     if blend.basis not in (None, "mol/mol"):
         raise scanner.fault("salts are counted in moles", blend.ratio_start, "a ratio of moles")
     return list(blend.names), list(blend.parts), blend.ratio_start
@@ -133,28 +170,31 @@ def _read_solutes(scanner: Scanner) -> list[Entry]:
         before = scanner.position
         if not scanner.take(_AND) and not scanner.take_mark("/"):
             return entries
-        if not scanner.peek_amount(scanner.position):
+        at = scanner.position
+        if not scanner.peek_amount(at) and not scanner.name_then_amount(at):
             if scanner.text[before : scanner.position].strip() == "/":
                 scanner.position = before
                 return entries
-            raise scanner.unexpected(EXPECT_AMOUNT)
+            raise _no_amount(scanner)
         entries.append(_read_solute(scanner))
 
 
 def _read_solute(scanner: Scanner) -> Entry:
     amount = scanner.amount()
     if amount is None:
-        raise _no_amount(scanner)
+        if not scanner.name_then_amount(scanner.position):
+            raise _no_amount(scanner)
+        name = scanner.name()
+        return Entry(name, _amount_behind(scanner))
     scanner.take(_OF)
     name = scanner.name()
     return Entry(name, amount, scanner.take_hydrate())
 
 
-def _no_amount(scanner: Scanner) -> Exception:
-    start = scanner.position
+def _no_amount(scanner: Scanner) -> RecipeError:
     if scanner.number() is None:
         return scanner.unexpected(EXPECT_AMOUNT)
-    return scanner.unexpected("a unit such as M, mol/L, mol/kg or wt%", max(start, scanner.position))
+    return scanner.unexpected("a unit such as M, mol/L, mol/kg or wt%")
 
 
 def _take_separator(scanner: Scanner) -> bool:
@@ -263,7 +303,7 @@ def _amount_behind(scanner: Scanner) -> Amount:
         scanner.skip_space()
     amount = scanner.amount()
     if amount is None:
-        raise scanner.unexpected("the amount of the additive, such as 2 wt%,")
+        raise scanner.unexpected("the amount of the additive, such as 2 wt%")
     if bracketed and not scanner.take_mark(")"):
         raise scanner.unexpected("a closing bracket")
     if bracketed:

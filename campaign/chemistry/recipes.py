@@ -9,6 +9,7 @@ from __future__ import annotations
 from collections.abc import Sequence
 from fractions import Fraction
 
+from campaign.chemistry.amounts import MASS, MOLE, VOLUME
 from campaign.chemistry.components import Component, Recipe
 from campaign.chemistry.concentrations import (
     IonCount,
@@ -27,8 +28,9 @@ from campaign.chemistry.grammar import (
     read_recipe,
     read_salts,
 )
+from campaign.chemistry.naming import Name
 from campaign.chemistry.ratios import normalised, ratio_text, rounded
-from campaign.chemistry.scanner import MASS, MOLE, VOLUME, Name, Scanner
+from campaign.chemistry.scanner import Scanner
 from campaign.chemistry.species import Species, index_of, near
 from campaign.chemistry.spelling import MAX_LENGTH, clean, number_text
 from campaign.errors import RecipeError
@@ -98,7 +100,7 @@ def solvent_key_of(text: str, extra: Sequence[Species] = ()) -> str:
     scanner = _scanner(text, extra)
     blend = read_blend(scanner)
     if not scanner.at_end():
-        raise scanner.unexpected("a ratio such as (1:1 v/v), or the end,")
+        raise scanner.unexpected("a ratio such as (1:1 v/v), or the end")
     _refuse_repeated_names(scanner, blend.names)
     return _solvent_key(_solvents(scanner, blend)[0])
 
@@ -164,7 +166,11 @@ def _wrong_count(
 ) -> RecipeError:
     example = ":".join(["1"] * names)
     if not parts:
-        return scanner.fault(f"{names} {what} without a ratio", start, f"a ratio such as {example}")
+        return scanner.fault(
+            f"{names} {what} without a ratio",
+            start,
+            f"a ratio such as {example}, or an amount beside each additive",
+        )
     return scanner.fault(
         f"a ratio of {parts} parts for {names} {what}", start, f"{names} numbers such as {example}"
     )
@@ -220,15 +226,19 @@ def _solvents(
         return [(Component("solvent", names[0], 1.0, "v/v"), Fraction(1))], []
     if len(blend.parts) != len(names):
         raise _wrong_count(scanner, len(names), len(blend.parts), "solvents", blend.ratio_start)
-    shares = normalised(blend.parts, _BLEND_PLACES)
+    # Sorted first, so that rounding does not depend on the order of writing.
+    pairs = sorted(zip(names, blend.parts, strict=True), key=lambda pair: _order(pair[0]))
+    shares = normalised([part for _, part in pairs], _BLEND_PLACES)
     if shares is None:
         raise scanner.fault(
             "a solvent below a billionth of the blend", blend.ratio_start, "a ratio such as 1:1"
         )
     basis = blend.basis or "v/v"
     warnings = [] if blend.basis else ["the blend's ratio has no basis: read as volume (v/v)"]
-    pairs = sorted(zip(names, shares, strict=True), key=lambda pair: _order(pair[0]))
-    return [(Component("solvent", n, float(share), basis), share) for n, share in pairs], warnings
+    return [
+        (Component("solvent", name, float(share), basis), share)
+        for (name, _), share in zip(pairs, shares, strict=True)
+    ], warnings
 
 
 def _solvent_key(solvents: Sequence[tuple[Component, Fraction]]) -> str:

@@ -99,7 +99,8 @@ _SPELLINGS = {
     "ag/ag+": "Ag/Ag+", "ag+/ag": "Ag/Ag+",
     "hg/hgo": "Hg/HgO", "hgo/hg": "Hg/HgO",
     "hg/hg2so4": "Hg/Hg2SO4", "hg2so4/hg": "Hg/Hg2SO4", "mse": "Hg/Hg2SO4",
-    "fc/fc+": "Fc/Fc+", "fc+/fc": "Fc/Fc+", "ferrocene": "Fc/Fc+", "ferrocene/ferrocenium": "Fc/Fc+",
+    "fc/fc+": "Fc/Fc+", "fc+/fc": "Fc/Fc+", "ferrocene": "Fc/Fc+",
+    "ferrocene/ferrocenium": "Fc/Fc+",
 }  # fmt: skip
 _FILLINGS = {
     "satkcl": "Ag/AgCl (sat. KCl)", "saturatedkcl": "Ag/AgCl (sat. KCl)",
