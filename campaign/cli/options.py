@@ -91,9 +91,13 @@ class Asked:
         """Return the conditions in the ledger's terms; Refused for what cannot be read."""
         from campaign.ledger.filters import read_filter
 
+        return read_filter(connection, **self.stated())
+
+    def stated(self) -> dict[str, str]:
+        """Return the conditions that were given, by option."""
         own = {"db", "json", "csv"}
-        texts = {f.name: getattr(self, f.name) for f in fields(self) if f.name not in own}
-        return read_filter(connection, **texts)
+        given = {f.name: getattr(self, f.name) for f in fields(self) if f.name not in own}
+        return {name: text for name, text in given.items() if text is not None}
 
 
 def query(command: Callable[..., None]) -> Callable[..., None]:

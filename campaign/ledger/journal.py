@@ -132,6 +132,11 @@ class Pen:
         self._next[table.name] = number + 1
         return number
 
+    def give_back(self, table: Table, number: int) -> None:
+        """Return the number taken last, unused."""
+        if self._next.get(table.name) == number + 1:
+            self._next[table.name] = number
+
     def make(self, entry: Entry, table: Table, row: Mapping[str, Any]) -> Row:
         """Add a row to an entry, numbering it where its table numbers rows."""
         made = dict(row)

@@ -14,15 +14,25 @@ from typing import Any
 import numpy as np
 import numpy.typing as npt
 
+from campaign.ledger.quantities import QUANTITIES
+
+__all__ = [
+    "QUANTITIES",
+    "BoolArray",
+    "ElectrodeFacts",
+    "ElectrolyteFacts",
+    "FloatArray",
+    "IntArray",
+    "Plateau",
+    "Readings",
+    "Snapshot",
+    "TextArray",
+]
+
 FloatArray = npt.NDArray[np.float64]
 IntArray = npt.NDArray[np.int64]
 BoolArray = npt.NDArray[np.bool_]
 TextArray = npt.NDArray[np.object_]
-
-QUANTITIES = (
-    "R_el", "R_sl", "Q_sl", "n_sl", "R_ct", "Q_ct", "n_ct", "R_lat", "Q_lat", "n_lat", "sigma_w",
-)  # fmt: skip
-
 
 @dataclass(frozen=True)
 class Readings:

@@ -149,7 +149,7 @@ def list_electrodes(connection: Connection, wanted: Filter) -> list[Row]:
             "window_low_V": row["window_low_V"],
             "window_high_V": row["window_high_V"],
             "window_reference": row["window_reference"],
-            "maximum_temperature_C": _celsius(row["maximum_temperature_K"]),
+            "maximum_temperature_C": celsius(row["maximum_temperature_K"]),
             "note": row["note"],
         }
         for row in rows
@@ -184,8 +184,8 @@ def list_electrolytes(connection: Connection, wanted: Filter) -> list[Row]:
             "aqueous": bool(row["aqueous"]),
             "cells": row["cells"],
             "density_g_cm3": row["density_g_cm3"],
-            "minimum_temperature_C": _celsius(row["minimum_temperature_K"]),
-            "maximum_temperature_C": _celsius(row["maximum_temperature_K"]),
+            "minimum_temperature_C": celsius(row["minimum_temperature_K"]),
+            "maximum_temperature_C": celsius(row["maximum_temperature_K"]),
             "note": row["note"],
         }
         for row in rows
@@ -223,7 +223,7 @@ def list_cells(connection: Connection, wanted: Filter) -> list[Row]:
             "area_cm2": row["area_cm2"],
             "configuration": row["configuration"],
             "reference": row["reference"],
-            "assembled_at": _local(row["assembled_at"], row["assembled_offset"]),
+            "assembled_at": local(row["assembled_at"], row["assembled_offset"]),
             "operator": row["operator"],
             "measurements": row["measurements"],
             "note": row["note"],
@@ -255,9 +255,9 @@ def list_measurements(connection: Connection, wanted: Filter) -> list[Row]:
             "cell": row["cell_label"],
             "electrode": row["electrode_label"],
             "electrolyte": row["recipe"],
-            "measured_at": _local(row["measured_at"], row["measured_offset"]),
+            "measured_at": local(row["measured_at"], row["measured_offset"]),
             "potential_V": row["potential_V"],
-            "temperature_C": _celsius(row["temperature_K"]),
+            "temperature_C": celsius(row["temperature_K"]),
             **{name: row[name] for name in _MEASUREMENT_COLUMNS},
             **values.get(row["record"], {}),
         }
@@ -307,8 +307,8 @@ def list_fits(connection: Connection, wanted: Filter) -> list[Row]:
             "record": row["record"],
             "measurement": row["measurement"],
             "cell": kept[row["measurement"]][0],
-            "measured_at": _local(*kept[row["measurement"]][1:]),
-            "fitted_at": _local(row["fitted_at"], row["fitted_offset"]),
+            "measured_at": local(*kept[row["measurement"]][1:]),
+            "fitted_at": local(row["fitted_at"], row["fitted_offset"]),
             "fitted_by": row["fitted_by"],
             "circuit": row["circuit"],
             "weighting": row["weighting"],
@@ -320,11 +320,11 @@ def list_fits(connection: Connection, wanted: Filter) -> list[Row]:
     ]
 
 
-def _celsius(kelvin: float | None) -> float | None:
+def celsius(kelvin: float | None) -> float | None:
     return None if kelvin is None else round(kelvin - ZERO_C, 9)
 
 
-def _local(utc: str | None, offset: int | None) -> str | None:
+def local(utc: str | None, offset: int | None) -> str | None:
     from campaign.ledger.instants import show_local
 
     return None if utc is None else show_local(utc, offset or 0)

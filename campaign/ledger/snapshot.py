@@ -116,7 +116,8 @@ def _concentrations(
     electrodes: Mapping[str, ElectrodeFacts],
 ) -> FloatArray:
     """Return the concentration of each electrode's own ion in each recipe."""
-    from campaign.chemistry.recipes import ion_concentration, parse_recipe
+    from campaign.chemistry.concentrations import ion_concentration
+    from campaign.chemistry.recipes import parse_recipe
     from campaign.ledger.book import stored_species
 
     species = stored_species(connection)

@@ -1,0 +1,40 @@
+"""campaign amend"""
+
+from __future__ import annotations
+
+from typing import Annotated
+
+import typer
+
+from campaign.cli.options import By, Db, Json
+
+
+def amend(
+    kind: Annotated[str, typer.Argument(help="electrode, electrolyte, cell, measurement or fit.")],
+    name: Annotated[str, typer.Argument(help="Its label, recipe or record number.")],
+    changes: Annotated[
+        list[str], typer.Argument(metavar="FIELD=VALUE...", help="An empty value empties a field.")
+    ],
+    reason: Annotated[str, typer.Option("--reason", metavar="TEXT", help="Why (required).")],
+    by: By = None,
+    db: Db = None,
+    json: Json = False,
+) -> None:
+    """Correct a record; the journal keeps what it was, what it is and why.
+
+    Example: campaign amend cell C07 area_cm2=1.13 --reason "punch measured again"
+    """
+    from campaign.ledger.amending import amend as apply
+    from campaign.ledger.amending import read_changes
+    from campaign.ledger.database import open_database
+    from campaign.ledger.fields import clean_text
+
+    wanted = read_changes(changes)
+    changed = apply(open_database(db), kind, name, wanted, clean_text(reason, "reason"), by)
+    if json:
+        from campaign.present.tables import show_json
+
+        show_json({"amended": {f: {"was": was, "is": now} for f, (was, now) in changed.items()}})
+        return
+    for field, (was, now) in changed.items():
+        print(f"{kind} {name}: {field} was {was}, is {now}")

@@ -1,0 +1,50 @@
+"""campaign withdraw"""
+
+from __future__ import annotations
+
+from typing import Annotated
+
+import typer
+
+from campaign.cli.options import By, Db, Json
+
+
+def withdraw(
+    kind: Annotated[
+        str, typer.Argument(help="electrode, electrolyte, cell, measurement, fit or import.")
+    ],
+    name: Annotated[str, typer.Argument(help="Its label, recipe or number.")],
+    reason: Annotated[str, typer.Option("--reason", metavar="TEXT", help="Why (required).")],
+    by: By = None,
+    db: Db = None,
+    json: Json = False,
+) -> None:
+    """Take a record, or a whole import, back. Nothing is deleted.
+
+    Example: campaign withdraw measurement 118 --reason "reference electrode had dried out"
+    """
+    from campaign.errors import refused
+    from campaign.ledger import withdrawing
+    from campaign.ledger.database import open_database
+    from campaign.ledger.fields import clean_text
+
+    why = clean_text(reason, "reason")
+    database = open_database(db)
+    if kind == "import":
+        if not name.isdigit():
+            raise refused(
+                f"an import is named by its number; '{name}' is not one; 'campaign list imports' "
+                "shows them",
+                value=name,
+                expected="an import's number",
+            )
+        counts = withdrawing.withdraw_import(database, int(name), why, by)
+    else:
+        counts = withdrawing.withdraw(database, kind, name, why, by)
+    if json:
+        from campaign.present.tables import show_json
+
+        show_json({"withdrawn": counts})
+        return
+    listed = ", ".join(f"{count} {kind}{'s' if count != 1 else ''}" for kind, count in counts.items())
+    print(f"Withdrawn: {listed}.")
