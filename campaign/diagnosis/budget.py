@@ -410,9 +410,10 @@ def _pair_crossings(curves: Mapping[str, FloatArray], a: str, b: str) -> list[Cr
     gap = np.log(np.where(both, curves[a], 1.0)) - np.log(np.where(both, curves[b], 1.0))
     logs = np.log(TIMES_s)
     found = []
-    for k in np.flatnonzero(np.sign(gap[:-1]) * np.sign(gap[1:]) < 0):
+    above = gap >= 0
+    for k in np.flatnonzero((above[:-1] != above[1:]) & both[:-1] & both[1:]):
         at = logs[k] - gap[k] * (logs[k + 1] - logs[k]) / (gap[k + 1] - gap[k])
-        before, after = (a, b) if gap[k] > 0 else (b, a)
+        before, after = (a, b) if above[k] else (b, a)
         leading = all(curves[before][k] >= curves[other][k] for other in curves)
         found.append(Crossing(float(np.exp(at)), before, after, leading))
     return found

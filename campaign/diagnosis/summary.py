@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import math
 from collections.abc import Callable, Iterable, Iterator, Mapping, Sequence
 from dataclasses import dataclass, field, replace
 from typing import Any, Final
@@ -14,7 +13,14 @@ from campaign.diagnosis.budget import RESPONSE_OF, TERMS, Budget, Crossing, budg
 from campaign.diagnosis.engine import Assessment, Evidence, assess
 from campaign.diagnosis.signatures import AXES, candidates
 from campaign.diagnosis.verdict import Judged, Verdict, agree, confounded_axes, judge, limit
-from campaign.diagnosis.wording import Decider, largest, numbers, why_open
+from campaign.diagnosis.wording import (
+    Decider,
+    contrast_interval,
+    exponential,
+    numbers,
+    telling,
+    why_open,
+)
 from campaign.errors import refused
 from campaign.kinetics.constants import ZERO_CELSIUS_K
 from campaign.ledger.criteria import Criteria
@@ -321,8 +327,9 @@ def _unique(texts: Iterable[str]) -> tuple[str, ...]:
 def diagnostic(axis: str, finding: Decider | None, alpha: float) -> dict[str, Any]:
     """Return one axis as plain data: decision, estimate, interval [low, high] or null.
 
-    The estimate is the order [1], the largest factor [1], or the largest barrier difference
-    [kJ/mol]; an axis that was not measured is open.
+    The estimate is the order [1], or of the most telling pair of levels the factor [1] or the
+    difference of barriers [kJ/mol], with an interval simultaneous over all pairs; an axis
+    that was not measured is open.
     """
     if finding is None:
         return {"decision": "open", "estimate": None, "interval": None, "because": "not measured"}
@@ -349,13 +356,13 @@ def _estimate(
     slope = getattr(finding, "slope", None)
     if slope is not None:
         return slope.value, slope.interval(1 - alpha), None
-    contrast = largest(finding)
+    contrast = telling(finding, alpha)
     if contrast is None:
         return None, None, None
-    value, interval = contrast.estimate.value, contrast.estimate.interval(1 - alpha)
+    value, interval = contrast.estimate.value, contrast_interval(finding, contrast, alpha)
     if axis != "barrier":
-        value = math.exp(value)
-        interval = None if interval is None else (math.exp(interval[0]), math.exp(interval[1]))
+        value = exponential(value)
+        interval = interval and (exponential(interval[0]), exponential(interval[1]))
     return value, interval, [contrast.a, contrast.b]
 
 

@@ -40,6 +40,20 @@ def _spread(value: float, interval: tuple[float, float] | None) -> str:
     return f"{value:.3g} [{interval[0]:.3g}, {interval[1]:.3g}]"
 
 
+def contrast_interval(
+    finding: Decider | None, contrast: Contrast, alpha: float
+) -> tuple[float, float] | None:
+    """Return the 1 - alpha interval of one contrast, simultaneous over the finding's contrasts."""
+    family = getattr(finding, "family", "single")
+    if family == "single":
+        return bounds(contrast.estimate, alpha)
+    from campaign.statistics.equivalence import simultaneous_interval
+
+    contrasts: tuple[Contrast, ...] = getattr(finding, "contrasts", ())
+    levels = int(getattr(finding, "n_levels", 0))
+    return simultaneous_interval(contrast.estimate, family, levels, len(contrasts), alpha)
+
+
 def largest(finding: Decider | None) -> Contrast | None:
     """Return the contrast furthest from zero, or None where there is none."""
     contrasts: tuple[Contrast, ...] = getattr(finding, "contrasts", ())
@@ -47,23 +61,36 @@ def largest(finding: Decider | None) -> Contrast | None:
     return max(known, key=lambda one: abs(one.estimate.value)) if known else None
 
 
+def telling(finding: Decider | None, alpha: float) -> Contrast | None:
+    """Return the contrast whose interval is furthest from zero, else the largest one."""
+    contrasts: tuple[Contrast, ...] = getattr(finding, "contrasts", ())
+
+    def clearance(one: Contrast) -> float:
+        interval = contrast_interval(finding, one, alpha)
+        return 0.0 if interval is None else max(interval[0], -interval[1], 0.0)
+
+    clear = [one for one in contrasts if clearance(one) > 0]
+    return max(clear, key=clearance) if clear else largest(finding)
+
+
 def numbers(axis: str, finding: Decider | None, alpha: float = 0.05) -> str:
     """Return the estimate behind a decision in one phrase, '' where there is none."""
     slope: Estimate | None = getattr(finding, "slope", None)
     if slope is not None:
         return f"order {_spread(slope.value, bounds(slope, alpha))}"
-    contrast = largest(finding)
+    contrast = telling(finding, alpha)
     if contrast is None:
         return ""
     estimate, pair = contrast.estimate, f"{contrast.a} against {contrast.b}"
-    interval = bounds(estimate, alpha)
+    interval = contrast_interval(finding, contrast, alpha)
     if axis == "barrier":
-        return f"largest difference {_spread(estimate.value, interval)} kJ/mol, {pair}"
-    ratio = None if interval is None else (_exp(interval[0]), _exp(interval[1]))
-    return f"largest factor {_spread(_exp(estimate.value), ratio)}, {pair}"
+        return f"difference {_spread(estimate.value, interval)} kJ/mol, {pair}"
+    ratio = None if interval is None else (exponential(interval[0]), exponential(interval[1]))
+    return f"factor {_spread(exponential(estimate.value), ratio)}, {pair}"
 
 
-def _exp(value: float) -> float:
+def exponential(value: float) -> float:
+    """Return e^value, held finite."""
     return math.exp(min(value, 700.0))
 
 
