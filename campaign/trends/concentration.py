@@ -99,19 +99,20 @@ def order(
         raise NoContrast("no stratum holds two concentrations under equal conditions")
     s = s.leaving(keep, between.NO_STRATUM_CONTRAST)
     x, level, stratum = x[~keep], combine(level[~keep]), combine(stratum[~keep])
-    centres = np.array([x[level == i].mean() for i in range(int(level.max()) + 1)])
+    concentrations = levels.medians(s.c.concentration, level)
     group = combine(*(getattr(s.c, name) for name in held)) if held else np.zeros_like(level)
     fitted = between.fit(s, x[:, None], stratum)
-    return _judge(s, fitted, _Parts(x, level, centres, stratum, group, tuple(held)), criteria)
+    return _judge(s, fitted, _Parts(x, level, concentrations, stratum, group, tuple(held)), criteria)
 
 
 @dataclass(frozen=True)
 class _Parts:
-    """Columns of the order fit: x = ln c, its levels, strata, and series codes `group`."""
+    """Columns of the order fit: x = ln c (or ln a), level codes into `concentrations`,
+    strata, and series codes `group`."""
 
     x: FloatArray
     level: IntArray
-    centres: FloatArray
+    concentrations: FloatArray
     stratum: IntArray
     group: IntArray
     held: tuple[str, ...]
@@ -135,13 +136,13 @@ def _judge(s: Sample, fitted: BetweenFit, p: _Parts, criteria: Criteria) -> Orde
     warnings += [one.warning("concentration") for one in confounders]
     finding = Finding(
         "concentration", s.response, s.n_specimens, len(s), slope, criteria.order_margin,
-        contrasts, math.log(criteria.ratio_margin), n_levels=len(p.centres),
+        contrasts, math.log(criteria.ratio_margin), n_levels=len(p.concentrations),
         open_because=s.open_because or s.pore_open
         or (f"strata differ, {apart.text}" if apart else None),
         confounded=bool(confounders), warnings=tuple(warnings),
     )  # fmt: skip
     adjusted = _adjusted(s, p, confounders[0]) if confounders else None
-    return OrderFit(s, fitted, finding, tuple(np.exp(p.centres).tolist()), adjusted)
+    return OrderFit(s, fitted, finding, tuple(p.concentrations.tolist()), adjusted)
 
 
 def _negative(e: Estimate) -> Estimate:
@@ -150,10 +151,11 @@ def _negative(e: Estimate) -> Estimate:
 
 def _levels(s: Sample, p: _Parts) -> tuple[tuple[Contrast, ...], float | None]:
     """Return level-to-level differences of ln R and the p value of lack of fit."""
-    names = [f"{math.exp(centre):.6g}" for centre in p.centres]
+    names = [f"{value:.6g}" for value in p.concentrations]
     fitted = levels.fit_levels(s, p.level, p.stratum)
     contrasts = levels.all_pairs(fitted, names)
-    return contrasts, heterogeneity.lack_of_fit(fitted, contrasts, p.centres)
+    medians_of_x = levels.medians(p.x, p.level)
+    return contrasts, heterogeneity.lack_of_fit(fitted, contrasts, medians_of_x)
 
 
 def _splits(

@@ -7,7 +7,7 @@ day count as equal (common practice, no source).
 from __future__ import annotations
 
 import math
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 
@@ -22,6 +22,10 @@ RESOLUTION_d = 1.0
 
 BATCH_GAP_d = 3.0
 """Cells assembled within this many days of one another are one batch (common practice)."""
+
+
+LEAST_REPEATED = 1e-3
+"""Least share of the spread in time that repeated readings must show to correct a drift."""
 
 
 @dataclass(frozen=True)
@@ -89,6 +93,23 @@ def within_cells(
         if r is not None and abs(r) > criteria.confounding_r:
             found.append(Confounder(name, r, column - column.mean()))
     return tuple(found)
+
+
+def without_drift(
+    s: Sample, confounder: Confounder, inside: IntArray, level: IntArray
+) -> Sample | None:
+    """Return the sample less its common drift along the confounder, None where it has none.
+
+    The drift is taken from readings repeated at one level of the axis inside one specimen,
+    where the axis itself cannot have changed anything.
+    """
+    same = combine(inside, level)
+    dz, dy = centred(confounder.column, same), centred(s.y, same)
+    whole = centred(confounder.column, inside)
+    size = float(dz @ dz)
+    if size < LEAST_REPEATED * float(whole @ whole):
+        return None
+    return replace(s, y=s.y - float(dz @ dy) / size * confounder.column)
 
 
 def _correlation(X: FloatArray, z: FloatArray) -> float | None:

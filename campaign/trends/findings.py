@@ -37,6 +37,7 @@ class Finding:
     n_levels: number of levels the contrasts come from (Tukey's k, Dunnett's k).
     open_because: a reason that leaves the decision open whatever the numbers say.
     confounded: a confounding warning stands against this finding.
+    tested: False where the readings hold no contrast on this axis (`open_because` says why).
     """
 
     axis: Axis
@@ -52,6 +53,7 @@ class Finding:
     open_because: str | None = None
     confounded: bool = False
     warnings: tuple[str, ...] = field(default=())
+    tested: bool = True
 
     def decision(self, alpha: float = 0.05) -> Decision:
         """Return the decision with error probability `alpha` (two-sided intervals 1 - alpha)."""

@@ -86,11 +86,11 @@ def order_by_group(
     )
 
 
-def ratio_by_group(
+def differences_by_group(
     s: Sample, level: IntArray, stratum: IntArray, group: IntArray, margin: float, name: Named,
-    names: Sequence[str],
+    text: Callable[[int, int], str], shown: Callable[[float], float],
 ) -> Split | None:  # fmt: skip
-    """Test whether level differences of ln R are the same in every group of strata."""
+    """Test whether level differences of y are the same in every group of strata."""
     if int(group.max()) == 0:
         return None
     n_levels = int(level.max()) + 1
@@ -110,10 +110,9 @@ def ratio_by_group(
         if len(found) < 2:
             continue
         p, values = _equal(fitted.fit, np.array([row for _, row in found]))
-        text = f"R({names[b]})/R({names[a]}) " + "{:.2f}"
         split = _split(
             min(1.0, p * len(pairs)), [e.value for e in values], margin,
-            [name(g) for g, _ in found], text, math.exp,
+            [name(g) for g, _ in found], text(b, a), shown,
         )  # fmt: skip
         if split and (worst is None or split.p < worst.p):
             worst = split

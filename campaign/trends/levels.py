@@ -13,7 +13,7 @@ from campaign.trends import between
 from campaign.trends.between import BetweenFit
 from campaign.trends.findings import Contrast
 from campaign.trends.sample import Sample
-from campaign.trends.strata import combine, components
+from campaign.trends.strata import combine, components, match
 
 MOST_LEVELS = 12
 """More levels of a number than this are compared in as many groups."""
@@ -84,13 +84,19 @@ def against(fitted: LevelFit, base: int, names: Sequence[str]) -> tuple[Contrast
 
 
 def group_levels(values: FloatArray, tolerance: float) -> tuple[IntArray, FloatArray]:
-    """Return level codes [n] of a number and the mean value of each level.
+    """Return level codes [n] of a number, rising, and the median value of each level.
 
     Values within `tolerance` are one level; more than MOST_LEVELS are grouped.
     """
-    from campaign.trends.strata import match, means
-
     codes = match(values, tolerance).codes
     if int(codes.max()) + 1 > MOST_LEVELS:
         codes = combine(codes * MOST_LEVELS // (int(codes.max()) + 1))
-    return codes, means(values, codes)
+    return codes, medians(values, codes)
+
+
+def medians(values: FloatArray, codes: IntArray) -> FloatArray:
+    """Return the median of `values` in each code 0..max, a value that occurs."""
+    order = np.lexsort((values, codes))
+    ends = np.cumsum(np.bincount(codes))
+    starts = np.concatenate([[0], ends[:-1]])
+    return values[order][(starts + ends - 1) // 2]

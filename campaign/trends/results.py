@@ -147,7 +147,7 @@ class DonorEstimate(SeriesEstimate):
 
 @dataclass(frozen=True, kw_only=True)
 class BarrierEstimate(SeriesEstimate):
-    """Arrhenius barriers [kJ/mol]: of ln R, and of ln(R/T), lower by about RT... by form.
+    """Arrhenius barriers [kJ/mol]: of ln R, and of ln(R/T), which is about RT higher.
 
     sigma_between here is the spread of barriers between specimens [kJ/mol].
     """
@@ -160,10 +160,12 @@ class BarrierEstimate(SeriesEstimate):
 
 @dataclass(frozen=True, kw_only=True)
 class BarrierDifference(Record):
-    """Difference of barriers a - b [kJ/mol] (form ln R) with a simultaneous interval."""
+    """Difference of barriers a - b [kJ/mol] (form ln R), interval simultaneous over the pairs.
+
+    compared: the recipe column that differs (solvents or additives)."""
 
     electrode: str
-    held: str
+    compared: str
     a: str
     b: str
     difference_kJ_mol: float

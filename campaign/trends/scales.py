@@ -6,6 +6,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
+from campaign.errors import Refused
 from campaign.ledger.readings import (
     BoolArray,
     ElectrodeFacts,
@@ -64,16 +65,14 @@ def _shift(reference: str, scale: str) -> tuple[float | None, str]:
     if reference == scale:
         return 0.0, ""
     try:
-        return float(convert(0.0, reference, scale)), (
-            f"potentials against {reference} were placed on the {scale} scale by tabulated "
-            "offsets; no table removes liquid-junction and solvation offsets between "
-            "aqueous and non-aqueous electrolytes"
-        )
-    except (KeyError, ValueError):
+        found = convert(0.0, reference, scale)
+    except Refused as reason:
         return None, (
-            f"potentials against {reference or 'an unnamed reference'} have no tabulated offset "
-            f"to {scale} and were left on their own scale"
+            f"potentials against {reference or 'an unnamed reference'} were left on their own "
+            f"scale: {reason}"
         )
+    text = f"potentials against {reference} were placed on the {scale} scale"
+    return found.value, f"{text}: {found.caution}" if found.caution else text
 
 
 def in_plateau(readings: Readings, facts: ElectrodeFacts) -> tuple[BoolArray, tuple[str, ...]]:

@@ -1,0 +1,145 @@
+"""Age: the drift of ln R since assembly, within specimens.
+
+Readings of one cell at equal temperature and potential are followed over time; the drift is
+given over the greatest age the electrode's cells reached. R_sl also against the square root
+of age, the law of a film that grows by diffusion through itself.
+"""
+
+from __future__ import annotations
+
+import math
+from dataclasses import dataclass, replace
+
+import numpy as np
+
+from campaign.ledger.criteria import Criteria
+from campaign.ledger.readings import Snapshot
+from campaign.statistics.estimate import Estimate
+from campaign.statistics.random_effects import Combined, combine
+from campaign.statistics.two_stage import Slopes, specimen_slopes
+from campaign.trends.between import NoContrast
+from campaign.trends.conditions import DAY_s, electrodes
+from campaign.trends.findings import Contrast, Finding
+from campaign.trends.response import unit
+from campaign.trends.results import AgeEstimate, AxisResult, LeftOut, decision_text
+from campaign.trends.sample import Sample, draw, series, source
+from campaign.trends.strata import combine as code
+
+LEAST_SPAN_d = 1.0
+"""Ages must span this [d] before `unresponsive` says anything (common practice)."""
+
+LOG_LINEAR, SQUARE_ROOT = "log-linear", "square-root"
+
+
+@dataclass(frozen=True)
+class AgeFit:
+    """The drift of one sample: rate [1/d or 1/sqrt d], total drift of ln R, greatest age [d]."""
+
+    sample: Sample
+    slopes: Slopes
+    combined: Combined
+    drift: Estimate
+    age_d: float
+    finding: Finding
+
+
+def estimate(
+    snapshot: Snapshot,
+    criteria: Criteria,
+    response: str = "R_ct",
+    *,
+    porous: bool = True,
+    scale: str | None = None,
+) -> AxisResult:
+    """Return the drift of every series. Raises Refused for an unknown response."""
+    found: list[AgeEstimate] = []
+    left: list[LeftOut] = []
+    laws = (LOG_LINEAR, SQUARE_ROOT) if response == "R_sl" else (LOG_LINEAR,)
+    for electrode in electrodes(snapshot):
+        whole = draw(snapshot, source(snapshot, criteria, electrode, scale), response, porous)
+        left += whole.left_out
+        for held, part in series(replace(whole, left_out=())):
+            try:
+                found += [_record(fit(part, criteria, law), held, criteria, law) for law in laws]
+            except NoContrast as reason:
+                where = {name: held[name] for name in ("salt", "solvents", "additives")}
+                left.append(LeftOut(str(reason), len(part), electrode, **where))
+    return AxisResult("age", response, unit(response), tuple(found), left_out=tuple(left))
+
+
+def fit(s: Sample, criteria: Criteria, law: str = LOG_LINEAR) -> AgeFit:
+    """Fit the drift within specimens. Raises NoContrast where no reading was repeated later."""
+    if not len(s):
+        raise NoContrast(f"no readings with {s.response}")
+    s = s.leaving(~np.isfinite(s.c.age_s), "no time of measurement recorded")
+    age_d = np.maximum(s.c.age_s, 0.0) / DAY_s
+    x = np.sqrt(age_d) if law == SQUARE_ROOT else age_d
+    inside = code(s.c.cell, s.c.temperature, s.c.scale, s.c.fixed)
+    try:
+        slopes = specimen_slopes(s.y, x, code(s.c.specimen), inside, s.known)
+    except NoContrast:
+        raise NoContrast("no cell was measured twice under equal conditions") from None
+    together = combine(slopes.slope, slopes.variance)
+    greatest = float(x.max())
+    rate = together.estimate
+    drift = Estimate(rate.value * greatest, rate.se * greatest, rate.df)
+    oldest = float(age_d.max())
+    finding = _finding(s, criteria, slopes, drift, oldest)
+    return AgeFit(s, slopes, together, drift, oldest, finding)
+
+
+def _finding(
+    s: Sample, criteria: Criteria, slopes: Slopes, drift: Estimate, oldest: float
+) -> Finding:
+    warnings = list(s.warnings)
+    unknown = int((~s.c.age_since_assembly).sum())
+    if unknown:
+        warnings.append(
+            f"{unknown} readings have no time of assembly: their age counts from the cell's first "
+            "measurement"
+        )
+    if len(slopes.slope) == 1:
+        warnings.append("one specimen: no interval between specimens")
+    plain = Finding(
+        "age", s.response, len(slopes.slope), len(s),
+        contrasts=(Contrast(f"{oldest:.3g} d", "new", drift),),
+        contrast_margin=math.log(criteria.ratio_margin), n_levels=2, warnings=tuple(warnings),
+    )  # fmt: skip
+    if oldest >= LEAST_SPAN_d or plain.decision(criteria.error_probability) == "responds":
+        return plain
+    return replace(plain, open_because="ages span less than a day")
+
+
+def _record(
+    fitted: AgeFit, held: dict[str, str], criteria: Criteria, law: str
+) -> AgeEstimate:
+    s, alpha = fitted.sample, criteria.error_probability
+    rate, drift = fitted.combined.estimate, fitted.drift
+    interval = drift.interval(1.0 - alpha)
+    return AgeEstimate(
+        electrode=s.electrode,
+        **held,
+        law=law,
+        drift=_exp(drift.value),
+        drift_ci=None if interval is None else (_exp(interval[0]), _exp(interval[1])),
+        rate=rate.value,
+        rate_ci=rate.interval(1.0 - alpha),
+        rate_unit="1/d" if law == LOG_LINEAR else "1/sqrt(d)",
+        age_span_d=fitted.age_d,
+        df=rate.df if fitted.combined.k > 1 else math.nan,
+        n_specimens=fitted.finding.n_specimens,
+        n_measurements=len(s),
+        sigma_between=fitted.combined.tau,
+        sigma_within=fitted.slopes.sigma_within,
+        decision=decision_text(fitted.finding, alpha),
+        warnings=fitted.finding.warnings,
+        flagged_se=int(s.filled.sum()),
+        left_out=s.left_out,
+        rows=tuple(s.c.measurement.tolist()),
+        finding=fitted.finding,
+    )
+
+
+def _exp(value: float) -> float:
+    """Return exp(value), infinite instead of an overflow."""
+    return math.exp(value) if value < 700.0 else math.inf

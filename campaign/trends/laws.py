@@ -1,0 +1,194 @@
+"""The law of the response over the potential: flat, exponential or valley.
+
+    flat         ln R = a
+    exponential  ln R = a + b E
+    valley       ln R = ln R_min - 1/2 ln(4 theta(1 - theta)), theta(E; E0, g) by the Frumkin
+                 isotherm (kinetics.frumkin)
+
+Compared by AICc on maximum likelihood with a random slope for every specimen and n =
+specimens; the level of every specimen at every temperature is free and the same in all three
+laws, so it is taken out by centring and not counted. A difference under 2, or too few
+specimens for the parameters, leaves the law open.
+"""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Mapping
+from dataclasses import dataclass, field
+
+import numpy as np
+
+from campaign.kinetics.frumkin import valley_resistance
+from campaign.ledger.readings import FloatArray, IntArray
+from campaign.statistics.estimate import Estimate
+from campaign.statistics.information import aicc
+from campaign.statistics.mixed import MixedFit, NoContrast, fit_mixed
+from campaign.trends.results import Interval
+from campaign.trends.sample import Sample
+from campaign.trends.strata import centred, combine
+
+LEAST_DIFFERENCE = 2.0
+"""Laws whose AICc differs by less cannot be told apart (common practice, no source)."""
+
+VARIANCES = 2
+_INTERACTIONS = (-3.0, -1.0, 0.0, 2.0, 5.0, 12.0)
+_LARGEST_LOG = math.log(104.0)
+
+
+@dataclass(frozen=True)
+class Law:
+    """The chosen law with its parameters: E0_V [V], g [1], slope of ln R [1/V].
+
+    aicc: by law, infinite where saturated.
+    """
+
+    name: str
+    aicc: Mapping[str, float] = field(default_factory=dict)
+    E0_V: float | None = None
+    E0_ci: Interval = None
+    g: float | None = None
+    g_ci: Interval = None
+    slope_per_V: float | None = None
+    slope_ci: Interval = None
+    warnings: tuple[str, ...] = ()
+
+
+@dataclass(frozen=True)
+class _Curves:
+    """Readings centred within specimen, cell and temperature; x [V], T [K], charge z."""
+
+    y: FloatArray
+    x: FloatArray
+    raw_V: FloatArray
+    T: FloatArray
+    block: IntArray
+    specimen: IntArray
+    charge: int
+    n_specimens: int
+
+    def fit(self, y: FloatArray, columns: list[FloatArray], method: str) -> MixedFit:
+        X = np.stack([np.ones_like(y), *columns], axis=1)
+        return fit_mixed(
+            y, X, self.specimen, slopes=self.x[:, None],
+            method="ML" if method == "ML" else "REML",
+        )  # fmt: skip
+
+    def shape(self, E0_V: float, log_g: float) -> FloatArray:
+        """Return the centred valley -1/2 ln(4 theta(1 - theta)), g = exp(log_g) - 4."""
+        pairs, where = np.unique(
+            np.stack([self.raw_V, self.T]), axis=1, return_inverse=True
+        )
+        g = math.exp(log_g) - 4.0
+        curve = np.log(valley_resistance(pairs[0], E0_V, g, 1.0, pairs[1], self.charge))
+        return centred(curve[where.reshape(-1)], self.block)
+
+
+def choose(s: Sample, alpha: float) -> Law:
+    """Return the law of the readings of one series on one reference scale."""
+    block = combine(s.c.specimen, s.c.cell, s.c.temperature)
+    curves = _Curves(
+        centred(s.y, block), centred(s.c.x_V, block), s.c.x_V, s.c.temperature_K, block,
+        combine(s.c.specimen), max(1, abs(s.c.facts.charge)), s.n_specimens,
+    )  # fmt: skip
+    n_levels = len(np.unique(s.c.fixed))
+    try:
+        flat = curves.fit(curves.y, [], "ML")
+        line = curves.fit(curves.y, [curves.x], "ML")
+    except NoContrast:
+        return Law("open", warnings=("the law over potential cannot be told from these readings",))
+    valley = _valley(curves) if n_levels > 2 else None
+    scores = {
+        "flat": aicc(flat.loglik, VARIANCES, curves.n_specimens),
+        "exponential": aicc(line.loglik, VARIANCES + 1, curves.n_specimens),
+        "valley": math.inf if valley is None or n_levels < 4
+        else aicc(valley.loglik, VARIANCES + 2, curves.n_specimens),
+    }  # fmt: skip
+    return _chosen(scores, curves, valley, alpha, n_levels)
+
+
+@dataclass(frozen=True)
+class _Valley:
+    E0_V: float
+    log_g: float
+    loglik: float
+
+
+def _chosen(
+    scores: dict[str, float], curves: _Curves, valley: _Valley | None, alpha: float, n_levels: int
+) -> Law:
+    ranked = sorted(scores, key=lambda name: scores[name])
+    best, second = ranked[0], ranked[1]
+    if not math.isfinite(scores[best]) or not math.isfinite(scores["exponential"]):
+        text = f"{curves.n_specimens} specimens are too few to compare laws over the potential"
+        return Law("open", scores, warnings=(text,))
+    if n_levels > 3 and not math.isfinite(scores["valley"]):
+        text = f"{curves.n_specimens} specimens are too few to test for a valley"
+        return Law("open", scores, warnings=(text,))
+    if scores[second] - scores[best] < LEAST_DIFFERENCE:
+        text = f"{best} and {second} cannot be told apart (AICc differs by less than 2)"
+        return Law("open", scores, warnings=(text,))
+    if best == "exponential":
+        slope = curves.fit(curves.y, [curves.x], "REML").contrast([0.0, 1.0])
+        return Law(
+            best, scores, slope_per_V=slope.value, slope_ci=slope.interval(1.0 - alpha)
+        )
+    if best == "valley" and valley is not None:
+        return _with_parameters(scores, curves, valley, alpha)
+    return Law(best, scores)
+
+
+def _valley(curves: _Curves) -> _Valley | None:
+    """Fit E0 and g by Gauss-Newton steps of the mixed model, from the best grid point."""
+    at = _start(curves)
+    for _ in range(40):
+        shape, jacobian = _linearised(curves, at)
+        try:
+            step = curves.fit(curves.y - shape, list(jacobian.T), "REML").beta[1:]
+        except NoContrast:
+            return None
+        move = np.clip(step, [-0.05, -0.7], [0.05, 0.7])
+        at = (at[0] + float(move[0]), min(max(at[1] + float(move[1]), -3.0), _LARGEST_LOG))
+        if abs(step[0]) < 1e-5 and abs(step[1]) < 1e-4:
+            break
+    fitted = curves.fit(curves.y - curves.shape(*at), [], "ML")
+    return _Valley(at[0], at[1], float(fitted.loglik))
+
+
+def _start(curves: _Curves) -> tuple[float, float]:
+    low, high = float(curves.raw_V.min()), float(curves.raw_V.max())
+    width = high - low
+    best, least = (0.5 * (low + high), math.log(4.0)), math.inf
+    for E0 in np.linspace(low - 0.2 * width, high + 0.2 * width, 15):
+        for g in _INTERACTIONS:
+            rest = curves.y - curves.shape(float(E0), math.log(g + 4.0))
+            size = float(rest @ rest)
+            if size < least:
+                best, least = (float(E0), math.log(g + 4.0)), size
+    return best
+
+
+def _linearised(curves: _Curves, at: tuple[float, float]) -> tuple[FloatArray, FloatArray]:
+    """Return the centred valley and its derivatives (n, 2) by central differences."""
+    dE, du = 1e-4, 1e-4
+    by_E0 = (curves.shape(at[0] + dE, at[1]) - curves.shape(at[0] - dE, at[1])) / (2 * dE)
+    by_u = (curves.shape(at[0], at[1] + du) - curves.shape(at[0], at[1] - du)) / (2 * du)
+    return curves.shape(*at), np.stack([by_E0, by_u], axis=1)
+
+
+def _with_parameters(
+    scores: dict[str, float], curves: _Curves, valley: _Valley, alpha: float
+) -> Law:
+    """Return the valley with intervals of E0 and g from the mixed model linearised there."""
+    shape, jacobian = _linearised(curves, (valley.E0_V, valley.log_g))
+    try:
+        fitted = curves.fit(curves.y - shape, list(jacobian.T), "REML")
+    except NoContrast:
+        return Law("valley", scores, E0_V=valley.E0_V, g=math.exp(valley.log_g) - 4.0)
+    E0, u = fitted.contrast([0.0, 1.0, 0.0]), fitted.contrast([0.0, 0.0, 1.0])
+    E0_ci = Estimate(valley.E0_V + E0.value, E0.se, E0.df).interval(1.0 - alpha)
+    u_ci = Estimate(valley.log_g + u.value, u.se, u.df).interval(1.0 - alpha)
+    return Law(
+        "valley", scores, E0_V=valley.E0_V, E0_ci=E0_ci, g=math.exp(valley.log_g) - 4.0,
+        g_ci=None if u_ci is None else tuple(math.exp(min(end, 700.0)) - 4.0 for end in u_ci),
+    )  # type: ignore[arg-type]
