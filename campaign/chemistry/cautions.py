@@ -27,6 +27,7 @@ METAL_SENTENCE = (
     "alkali metal: ignites with water and can ignite in moist air; "
     "keep under inert gas and a class D extinguishant at hand"
 )
+UNKNOWN_SENTENCE = "not in the table of species: read its safety data sheet first"
 CLOSING = (
     "The safety data sheet, the laboratory's risk assessment, local rules and qualified people "
     "decide; this program proposes and does not authorise."

@@ -47,6 +47,7 @@ __all__ = [
     "recipe_ions",
     "salt_key_of",
     "solvent_key_of",
+    "species_name",
     "to_molar",
 ]
 
@@ -130,6 +131,23 @@ def additive_key_of(text: str, extra: Sequence[Species] = ()) -> str:
     entries = read_additives(scanner)
     _refuse_repeated_names(scanner, [entry.name for entry in entries])
     return _additive_key(_additives(scanner, entries))
+
+
+def species_name(text: str) -> str:
+    """Return a name for a species of the campaign, in the one spelling recipes will use.
+
+    Raises RecipeError where a recipe could not be read back with it, or where it is already
+    a spelling of a shipped species; `position` is where the name stops being one.
+    """
+    scanner = _scanner(text, ())
+    name = scanner.name()
+    if not scanner.at_end():
+        raise scanner.unexpected("a name that ends here, without '+', '/', ':' or an amount")
+    if name.species is not None:
+        raise scanner.fault(
+            f"'{scanner.text}' already stands for {name.text}", 0, "a name not yet in the table"
+        )
+    return name.text
 
 
 def _scanner(text: str, extra: Sequence[Species]) -> Scanner:

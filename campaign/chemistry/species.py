@@ -6,14 +6,17 @@ which are passed to every function as `extra` and take precedence.
 
 from __future__ import annotations
 
-import csv
-import difflib
 from collections.abc import Iterable, Sequence
 from dataclasses import dataclass
 from functools import lru_cache
-from importlib import resources
 
-from campaign.chemistry.cautions import CLOSING, METAL_SENTENCE, METALS, SENTENCES
+from campaign.chemistry.cautions import (
+    CLOSING,
+    METAL_SENTENCE,
+    METALS,
+    SENTENCES,
+    UNKNOWN_SENTENCE,
+)
 from campaign.chemistry.spelling import clean_or_empty, fold
 
 SOURCES = {
@@ -122,8 +125,11 @@ def cautions(names: Iterable[str], extra: Sequence[Species] = ()) -> list[str]:
             _note(concerned, METAL_SENTENCE, metal)
             continue
         species = find(name, extra)
-        for sentence in species.cautions if species is not None else ():
-            _note(concerned, sentence, species.name if species is not None else name)
+        if species is None:
+            _note(concerned, UNKNOWN_SENTENCE, name)
+            continue
+        for sentence in species.cautions:
+            _note(concerned, sentence, species.name)
     lines = [f"{', '.join(who)}: {sentence}." for sentence, who in concerned.items()]
     return [*lines, CLOSING]
 
@@ -149,6 +155,9 @@ def _continues(text: str, end: int) -> bool:
 
 @lru_cache(maxsize=1)
 def _shipped() -> tuple[Species, ...]:
+    import csv
+    from importlib import resources
+
     table = resources.files("campaign.chemistry").joinpath("species.csv")
     lines = table.read_text(encoding="utf-8").splitlines()
     return tuple(_from_row(row) for row in csv.DictReader(lines))
@@ -230,6 +239,8 @@ def _salt_formulas(species: Species) -> tuple[str, ...]:
 
 @lru_cache(maxsize=256)
 def _near(folded: str, extra: tuple[Species, ...]) -> tuple[str, ...]:
+    import difflib
+
     index = _index(extra)
     names: list[str] = []
     for spelling in difflib.get_close_matches(folded, index.spellings, n=6, cutoff=0.6):

@@ -7,8 +7,10 @@ from campaign.chemistry.recipes import (
     parse_recipe,
     salt_key_of,
     solvent_key_of,
+    species_name,
 )
 from campaign.chemistry.species import Species, all_species
+from campaign.errors import RecipeError
 
 GROUPS = {
     "1 mol/L NaPF6 in DMC:EC (1:1 v/v) + 2 wt% FEC": [
@@ -269,3 +271,21 @@ def test_every_spelling_of_every_species_reads_in_every_role(species: Species) -
             assert parse_recipe(f"1 M NaZorb in Qorb with {typed} (2 wt%)").additive_key == (
                 f"2 wt% {species.name}"
             )
+
+
+@pytest.mark.parametrize("text", ["Zorblax", " zorblax  ether ", "Na(zor)2", "2-zorblaxol", "Zo₂"])
+def test_a_new_species_name_reads_back_in_a_recipe(text: str) -> None:
+    name = species_name(text)
+    assert species_name(name) == name
+    assert parse_recipe(f"1 M NaPF6 in {name}").solvent_key == name
+
+
+@pytest.mark.parametrize(
+    ("text", "position"),
+    [("", 0), ("M", 0), ("in", 0), ("Zor/blax", 3), ("Zor: blax", 3), ("Zor in", 4), ("EC", 0),
+     ("propylene carbonate", 0), ("12", 0), ("Zor\x07", 3)],
+)  # fmt: skip
+def test_a_name_no_recipe_could_read_is_refused(text: str, position: int) -> None:
+    with pytest.raises(RecipeError) as caught:
+        species_name(text)
+    assert caught.value.position == position

@@ -165,6 +165,7 @@ def test_cautions_name_whom_they_concern_once() -> None:
     assert any(line.startswith("DMC, DEC: flammable") for line in lines)
     assert any("HF" in line and "LiPF6" in line for line in lines)
     assert any(line.startswith("Na: alkali metal") for line in lines)
+    assert any(line.startswith("unknown thing: not in the table") for line in lines)
     assert cautions([]) == [CLOSING]
 
 
