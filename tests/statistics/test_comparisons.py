@@ -131,7 +131,7 @@ def test_negative_correlation_of_two():
 
 @pytest.mark.parametrize(("family", "df"), [("tukey", 0.0), ("single", math.nan), ("other", 5)])
 def test_what_has_no_interval_is_refused(family, df):
-    with pytest.raises(ValueError, match="df|family"):
+    with pytest.raises(ValueError, match=r"df|family"):
         critical(family, 0.05, df, 3)
 
 

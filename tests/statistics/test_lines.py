@@ -95,7 +95,7 @@ def test_one_stratum_has_nothing_to_compare():
 
 
 def test_confounding_with_age():
-    y, x, specimen, stratum = cells(7)
+    _, x, specimen, stratum = cells(7)
     assert correlation_within(x, 3 * x + stratum, specimen, stratum) == pytest.approx(1.0)
     assert correlation_within(x, -x + 10 * stratum, specimen, stratum) == pytest.approx(-1.0)
     assert math.isnan(correlation_within(x, stratum, specimen, stratum))
