@@ -28,7 +28,7 @@ RESPONSE_OF: Final = {
     "R_el": "R_el", "R_sl": "R_sl", "R_ct": "R_ct", "R_lat": "R_lat", "diffusion": "sigma_w",
 }  # fmt: skip
 
-ENOUGH: Final = 4
+ENOUGH: Final = 6
 """Specimens at the reference condition from which their own differences are used alone."""
 
 FEWEST_ELECTROLYTES: Final = 3

@@ -255,7 +255,7 @@ def _diagnose(
         candidates=dominant.assessments if dominant else (),
         verdict=replace(verdict, missing=(*verdict.missing, *_cell_limited(weighed))),
         checks=checks,
-        warnings=_warnings(weighed, dominant, verdict, checks, confounded),
+        warnings=_warnings(weighed, dominant, verdict, checks),
         criteria=criteria,
     )
 
@@ -291,7 +291,6 @@ def _warnings(
     dominant: Judged | None,
     verdict: Verdict,
     checks: Sequence[Check],
-    confounded: Sequence[str],
 ) -> tuple[str, ...]:
     said: list[str] = list(verdict.warnings)
     if weighed is not None:
@@ -303,16 +302,23 @@ def _warnings(
             )
         if weighed.missing_terms:
             said.append("not fitted, so not in the budget: " + ", ".join(weighed.missing_terms))
-    said += [f"{axis}: confounded with age, date or batch" for axis in confounded]
     if dominant is not None:
-        for axis, finding in dominant.evidence.items():
-            said += [f"{axis}: {text}" for text in getattr(finding, "warnings", ())]
+        said += _of_findings(dominant.evidence)
     said += [
         f"{one.name}: {one.sentence} (measurements {_some(one.measurements)})"
         for one in checks
         if one.measurements
     ]
     return _unique(said)
+
+
+def _of_findings(evidence: Evidence) -> list[str]:
+    """Return the findings' warnings, each once, with the axes it concerns."""
+    axes: dict[str, list[str]] = {}
+    for axis, finding in evidence.items():
+        for text in getattr(finding, "warnings", ()):
+            axes.setdefault(text, []).append(axis)
+    return [f"{', '.join(names)}: {text}" for text, names in axes.items()]
 
 
 def _some(numbers_: Sequence[int], most: int = 10) -> str:

@@ -245,16 +245,32 @@ def _tested(
     without: Callable[[str], str] | None,
 ) -> Verdict:
     if confounded:
-        note = f"confounded: {listed(list(confounded))}; not strong"
-        return replace(verdict, strength="moderate", warnings=(*verdict.warnings, note))
+        axes = listed(list(confounded))
+        note = f"confounded with age, date or batch: {axes}; not strong"
+        wish = f"further cells in random order: so far {axes} and age, date or batch run together"
+        return replace(
+            verdict,
+            strength="moderate",
+            warnings=(*verdict.warnings, note),
+            missing=(*verdict.missing, wish),
+        )
     if without is None:
         return verdict
     if len(specimens) < 2:
-        note = "one specimen carries everything; not strong"
-        return replace(verdict, strength="moderate", warnings=(*verdict.warnings, note))
+        return _hangs(verdict, "one specimen carries everything; not strong")
     for specimen in specimens:
         word = without(specimen)
         if word != verdict.word:
-            note = f"without specimen {specimen} the verdict is {word}; not strong"
-            return replace(verdict, strength="moderate", warnings=(*verdict.warnings, note))
+            return _hangs(
+                verdict, f"without specimen {specimen} the verdict is {word}; not strong"
+            )
     return verdict
+
+
+def _hangs(verdict: Verdict, note: str) -> Verdict:
+    return replace(
+        verdict,
+        strength="moderate",
+        warnings=(*verdict.warnings, note),
+        missing=(*verdict.missing, "more specimens, so that the verdict hangs on none of them"),
+    )

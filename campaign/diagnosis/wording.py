@@ -6,7 +6,7 @@ import math
 from typing import Protocol
 
 from campaign.statistics.estimate import Estimate
-from campaign.trends.findings import Contrast
+from campaign.trends.findings import Contrast, Family
 
 
 class Decider(Protocol):
@@ -19,9 +19,7 @@ class Decider(Protocol):
 
 def is_testable(finding: Decider | None) -> bool:
     """Return whether the campaign has the levels for this axis, decided or not."""
-    if finding is None:
-        return False
-    return getattr(finding, "slope", None) is not None or bool(getattr(finding, "contrasts", ()))
+    return finding is not None and bool(getattr(finding, "tested", True))
 
 
 def why_open(finding: Decider | None) -> str:
@@ -44,7 +42,7 @@ def contrast_interval(
     finding: Decider | None, contrast: Contrast, alpha: float
 ) -> tuple[float, float] | None:
     """Return the 1 - alpha interval of one contrast, simultaneous over the finding's contrasts."""
-    family = getattr(finding, "family", "single")
+    family: Family = getattr(finding, "family", "single")
     if family == "single":
         return bounds(contrast.estimate, alpha)
     from campaign.statistics.equivalence import simultaneous_interval

@@ -23,6 +23,7 @@ class Says:
     open_because: str | None = None
     confounded: bool = False
     warnings: tuple[str, ...] = ()
+    tested: bool = True
     n_specimens: int = 9
     n_measurements: int = 90
 
@@ -31,7 +32,7 @@ class Says:
 
 
 def never_varied() -> Says:
-    return Says("open", slope=None, open_because="one level only")
+    return Says("open", slope=None, open_because="one level only", tested=False)
 
 
 _TEXT = {
