@@ -28,6 +28,7 @@ _PER_VOLUME = re.compile(
 )
 _MOLARITY = re.compile(r" ?(?:(?P<prefix>[mμu])?M|molar)" + _END)
 _MOLALITY = re.compile(r" ?(?:(?P<m>m)|molal)" + _END)
+_PPM = re.compile(r" ?ppm" + _END)
 _PERCENT = re.compile(
     r" ?(?:(?P<before>wt|w/w|w|mass|weight|vol|v/v|volume|v|mole|mol)\.? ?-? ?%"
     r"|% ?\(? ?(?:by )?(?P<after>wt|w/w|m/m|weight|mass|vol|v/v|volume)\b\.?\)?|%)",
@@ -121,6 +122,8 @@ class AmountReader(Cursor):
         if found := _PERCENT.match(text, position):
             unit, remark = _percentage(found)
             return unit, 1, remark, found.end()
+        if found := _PPM.match(text, position):
+            return MASS, 10_000, "ppm is read by mass", found.end()
         if found := _PER_VOLUME.match(text, position):
             per, base = found["per"], (found["base"], found["exponent"])
             divisor = _PREFIX[found["prefix"]]

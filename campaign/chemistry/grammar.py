@@ -32,11 +32,15 @@ _WITH = re.compile(r" ?,? ?(?:with|containing|\+)(?:(?: an| the)? additives?:?)?
 _IN = re.compile(r" (?:dissolved |solution )?in(?![A-Za-z0-9]) ?", re.IGNORECASE)
 _MIXTURE = re.compile(r"(?:(?:an?|the) )?(?:mixture|blend) of ", re.IGNORECASE)
 _ARTICLE = re.compile(r"an? (?=[0-9])")
-_AQUEOUS = re.compile(r" ?(?:\( ?aq\.? ?\)|(?<= )aq(?![A-Za-z0-9])\.?)", re.IGNORECASE)
+_AQUEOUS = re.compile(
+    r" ?(?:\( ?aq\.? ?\)|(?<= )aq(?:ueous(?: solution)?)?(?![A-Za-z0-9])\.?)", re.IGNORECASE
+)
 _OF = re.compile(r" ?(?:of )?", re.IGNORECASE)
 _TAIL = re.compile(r"(?: as)?(?: an)? additives?(?![A-Za-z0-9])", re.IGNORECASE)
-_LEAD = re.compile(r" ?(?:(?:=|in a|in|at|of) ?)?", re.IGNORECASE)
+_LEAD = re.compile(r" ?(?:(?:=|in an?|in|with an?|with|at an?|at|of) ?)?", re.IGNORECASE)
+_BRACKET_IN_NAME = re.compile(r"\([^():/+ ]*\)")
 _RATIO_OF = re.compile(r" ?[=,]? ?")
+_CLOSE = re.compile(r" ?\)")
 _NEXT_BASIS = re.compile(r" ?[,/]? ?")
 
 
@@ -93,7 +97,21 @@ def read_recipe(scanner: Scanner, water: Name) -> Written:
 
 
 def read_blend(scanner: Scanner) -> Blend:
-    """Read a solvent blend with its ratio before or behind the names."""
+    """Read a solvent blend with its ratio before or behind the names, in brackets or not."""
+    bracketed = scanner.text[scanner.position : scanner.position + 1] == "("
+    if not bracketed or _BRACKET_IN_NAME.match(scanner.text, scanner.position):
+        return _read_bare_blend(scanner)
+    scanner.take_mark("(")
+    blend = _read_bare_blend(scanner)
+    if not scanner.take(_CLOSE):
+        raise scanner.unexpected("a closing bracket ')'")
+    if blend.parts:
+        return blend
+    start, parts, basis = _read_ratio(scanner)
+    return Blend(blend.names, tuple(parts), basis, start)
+
+
+def _read_bare_blend(scanner: Scanner) -> Blend:
     if not scanner.take(_MIXTURE):
         scanner.take(_ARTICLE)
     start, parts, basis = scanner.position, [], None
@@ -228,7 +246,7 @@ def _read_ratio(scanner: Scanner) -> tuple[int, list[Fraction], str | None]:
     basis = scanner.basis()
     if basis is not None:
         scanner.take(_RATIO_OF)
-    elif not scanner.peek_ratio():
+    if not scanner.peek_ratio():
         scanner.position = before
         return before, [], None
     parts = scanner.ratio()
@@ -244,7 +262,7 @@ def _read_bracketed(scanner: Scanner) -> tuple[int, list[Fraction], str | None]:
     if basis is None:
         scanner.take(_NEXT_BASIS)
         basis = scanner.basis()
-    if not scanner.take(re.compile(r" ?\)")):
+    if not scanner.take(_CLOSE):
         raise scanner.unexpected(f"{EXPECT_BASIS} or a closing bracket")
     return start, parts, basis or _read_basis(scanner)
 

@@ -20,15 +20,15 @@ EXPECT_BASIS = "v/v, w/w or mol/mol"
 _KINDS = {
     **dict.fromkeys(("v", "vol", "volume"), "v/v"),
     **dict.fromkeys(("w", "wt", "weight", "mass", "m"), "w/w"),
-    **dict.fromkeys(("mol", "mole", "moles", "molar", "n"), "mol/mol"),
+    **dict.fromkeys(("mol", "mole", "moles", "molar"), "mol/mol"),
 }
 _BASIS_START = re.compile(
-    r" ?(?:by |in |in a )?%? ?(?P<word>volume|vol|v|weight|wt|w|mass|moles|mole|molar|mol|m|n)"
+    r" ?(?:by |in |in a )?%? ?(?P<word>volume|vol|v|weight|wt|w|mass|moles|mole|molar|mol|m)"
     r"(?![A-Za-z0-9^-])",
     re.IGNORECASE,
 )
 _BASIS_MORE = re.compile(
-    r"\.? ?[:/] ?(?P<word>volume|vol|v|weight|wt|w|mass|mole|mol|m|n)(?![A-Za-z0-9])",
+    r"\.? ?[:/] ?(?P<word>volume|vol|v|weight|wt|w|mass|mole|mol|m)(?![A-Za-z0-9])",
     re.IGNORECASE,
 )
 _BASIS_END = re.compile(r"\.?(?: ?%)?(?: (?:ratio|parts|fraction)(?: of)?)?", re.IGNORECASE)

@@ -30,6 +30,9 @@ GROUPS = {
         "1 M sodium hexafluorophosphate in ethylene carbonate (EC):dimethyl carbonate (DMC) "
         "(1:1 v/v) + 2 wt% fluoroethylene carbonate",
         "1 M NaPF6 in a 1:1 mixture of EC and DMC (v/v) with an additive 2 wt% FEC",
+        "1 M NaPF6 in (EC:DMC 1:1 v/v) + 20000 ppm FEC",
+        "1 M NaPF6 in (EC:DMC) (1:1 v/v) + 2 wt% FEC",
+        "1 M NaPF6 in EC:DMC with a volume ratio of 1:1 + 2 wt% FEC",
         "NaPF6 (1 M) in 50 vol% EC + 50 vol% DMC + 2 wt% FEC",
     ],
     "1 mol/L NaClO4 in PC": [
@@ -63,6 +66,7 @@ GROUPS = {
         "3 molal NaTFSI (aq)",
         "3000 mmol/kg NaN(SO2CF3)2 in water",
         "3m NaTFSI aq.",
+        "3 m NaTFSI aqueous solution",
     ],
     "0.8 mol/L NaPF6 + 0.2 mol/L NaTFSI in DEC:EC (7:3 w/w) + 0.5 wt% NaDFOB + 1 vol% VC": [
         "0.8M NaPF6 + 0.2 M NaTFSI in EC/DEC 3:7 wt + 1 vol% VC + 0.5 wt% NaDFOB",
@@ -100,7 +104,7 @@ DESIGN_EXAMPLES = (
 
 
 def test_there_are_enough_spellings() -> None:
-    assert len({text for text, _ in SPELLINGS}) >= 55
+    assert len({text for text, _ in SPELLINGS}) >= 60
 
 
 @pytest.mark.parametrize(("text", "key"), SPELLINGS)
@@ -180,6 +184,7 @@ def test_warnings() -> None:
     assert "no basis" in warned("1 M NaPF6 in EC:DMC 1:1")
     assert "molality" in warned("21 m LiTFSI in water")
     assert "wt%" in warned("1 M NaPF6 in PC + 2% FEC")
+    assert "by mass" in warned("1 M NaPF6 in PC + 50 ppm water")
     assert "did you mean NaPF6" in warned("1 M NaPF in PC")
     assert "Zorblax is not in the table" in warned("1 M NaPF6 in Zorblax")
     assert "listed as salt" in warned("1 M NaPF6 in NaCl")
@@ -268,6 +273,10 @@ def test_every_spelling_of_every_species_reads_in_every_role(species: Species) -
             assert parse_recipe(f"1 M NaZorb in Qorb + 2 wt% {typed}").additive_key == (
                 f"2 wt% {species.name}"
             )
+            listed = parse_recipe(f"1 M NaZorb in Qorb:Zorb-2 1:1, {typed} (2 wt%)")
+            assert (listed.additive_key, listed.solvent_key) == (
+                f"2 wt% {species.name}", "Qorb:Zorb-2 (1:1 v/v)",
+            )  # fmt: skip
             assert parse_recipe(f"1 M NaZorb in Qorb with {typed} (2 wt%)").additive_key == (
                 f"2 wt% {species.name}"
             )

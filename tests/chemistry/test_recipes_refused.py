@@ -83,6 +83,8 @@ MALFORMED = [
     ("1 M Na\u202ePF6 in PC", 6),
     ("1 M NaPF6 in EC (DMC)", 17),
     ("1 M Na(PF6 in PC", 6),
+    ("1 M NaPF6 in (EC:DMC 1:1 v/v", 28),
+    ("1 M NaPF6 in ((EC:DMC) 1:1)", 14),
     ("1 M NaPF6 in PC" + " " * 600, 500),
 ]
 
