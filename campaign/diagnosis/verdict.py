@@ -261,9 +261,7 @@ def _tested(
     for specimen in specimens:
         word = without(specimen)
         if word != verdict.word:
-            return _hangs(
-                verdict, f"without specimen {specimen} the verdict is {word}; not strong"
-            )
+            return _hangs(verdict, f"without specimen {specimen} the verdict is {word}; not strong")
     return verdict
 
 
