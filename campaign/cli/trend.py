@@ -1,0 +1,75 @@
+"""campaign trend"""
+
+from __future__ import annotations
+
+from enum import Enum
+from typing import Annotated
+
+import typer
+
+from campaign.cli.options import Asked, query
+
+
+class Axis(str, Enum):
+    """The axes a resistance is followed along."""
+
+    concentration = "concentration"
+    solvent = "solvent"
+    additive = "additive"
+    potential = "potential"
+    temperature = "temperature"
+    age = "age"
+
+
+class Response(str, Enum):
+    """The fitted quantities that can be followed."""
+
+    R_el = "R_el"
+    R_sl = "R_sl"
+    R_ct = "R_ct"
+    R_lat = "R_lat"
+    R_int = "R_int"
+    sigma_w = "sigma_w"
+
+
+@query
+def trend(
+    axis: Annotated[Axis, typer.Argument(help="Along what.", show_default=False)],
+    asked: Asked,
+    response: Annotated[
+        Response, typer.Option("--response", help="Which fitted quantity.")
+    ] = Response.R_ct,
+    rows: Annotated[
+        bool, typer.Option("--rows", help="Name the measurements behind each estimate.")
+    ] = False,
+    apparent: Annotated[
+        bool, typer.Option("--apparent", help="Porous electrodes: use R_ct as it appears.")
+    ] = False,
+    scale: Annotated[
+        str | None,
+        typer.Option("--scale", metavar="REF", help="Compare potentials on this scale."),
+    ] = None,
+    without: Annotated[
+        list[int] | None,
+        typer.Option("--without", metavar="NO", help="Leave this measurement out; repeatable."),
+    ] = None,
+) -> None:
+    """Rebuild a trend: how a resistance depends on one axis, all else held.
+
+    Example: campaign trend concentration --electrode "NVP film A"
+    """
+    from campaign.present.trends import show_trend
+    from campaign.trends.reading import rebuilt
+
+    result = rebuilt(
+        axis.value,
+        asked.db,
+        asked.filter,
+        response=response.value,
+        porous=not apparent,
+        scale=scale,
+        without=without or (),
+    )
+    show_trend(
+        result, as_json=asked.json, as_csv=asked.csv, rows=rows, stated=asked.stated()
+    )
