@@ -22,11 +22,13 @@ from campaign.trends.conditions import DAY_s, electrodes
 from campaign.trends.findings import Contrast, Finding
 from campaign.trends.response import unit
 from campaign.trends.results import AgeEstimate, AxisResult, LeftOut, decision_text
-from campaign.trends.sample import Sample, draw, series, source
+from campaign.trends.sample import Sample, described, draw, series, source
 from campaign.trends.strata import combine as code
 
 LEAST_SPAN_d = 1.0
 """Ages must span this [d] before `unresponsive` says anything (common practice)."""
+
+TOO_YOUNG = "ages span less than a day"
 
 LOG_LINEAR, SQUARE_ROOT = "log-linear", "square-root"
 
@@ -107,7 +109,13 @@ def _finding(
     )  # fmt: skip
     if oldest >= LEAST_SPAN_d or plain.decision(criteria.error_probability) == "responds":
         return plain
-    return replace(plain, open_because="ages span less than a day")
+    return replace(plain, open_because=TOO_YOUNG)
+
+
+def spans_enough(s: Sample) -> bool:
+    """Return True where the greatest age reaches LEAST_SPAN_d."""
+    known = s.c.age_s[np.isfinite(s.c.age_s)]
+    return bool(len(known)) and float(known.max()) >= LEAST_SPAN_d * DAY_s
 
 
 def _record(
@@ -117,8 +125,7 @@ def _record(
     rate, drift = fitted.combined.estimate, fitted.drift
     interval = drift.interval(1.0 - alpha)
     return AgeEstimate(
-        electrode=s.electrode,
-        **held,
+        **described(s, held),
         law=law,
         drift=_exp(drift.value),
         drift_ci=None if interval is None else (_exp(interval[0]), _exp(interval[1])),
@@ -127,15 +134,10 @@ def _record(
         rate_unit="1/d" if law == LOG_LINEAR else "1/sqrt(d)",
         age_span_d=fitted.age_d,
         df=rate.df if fitted.combined.k > 1 else math.nan,
-        n_specimens=fitted.finding.n_specimens,
-        n_measurements=len(s),
         sigma_between=fitted.combined.tau,
         sigma_within=fitted.slopes.sigma_within,
         decision=decision_text(fitted.finding, alpha),
         warnings=fitted.finding.warnings,
-        flagged_se=int(s.filled.sum()),
-        left_out=s.left_out,
-        rows=tuple(s.c.measurement.tolist()),
         finding=fitted.finding,
     )
 

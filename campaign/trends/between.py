@@ -8,7 +8,7 @@ first brought to one effect a cell, so that repeated readings of one assembly co
 from __future__ import annotations
 
 import math
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 import numpy.typing as npt
@@ -20,6 +20,9 @@ from campaign.trends.sample import Sample
 from campaign.trends.strata import combine, levels_per_stratum, means
 
 __all__ = ["BetweenFit", "NoContrast", "fit", "lone"]
+
+MANY_STRATA = 40
+"""With more strata the fit works on one effect a cell."""
 
 NO_STRATUM_CONTRAST = "strata without contrast"
 
@@ -48,47 +51,60 @@ def lone(stratum: IntArray, level: IntArray) -> BoolArray:
 
 
 def fit(s: Sample, X: npt.ArrayLike, stratum: IntArray) -> BetweenFit:
-    """Fit ln R of the sample on the columns X (n, p). Raises NoContrast."""
+    """Fit ln R of the sample on the columns X (n, p). Raises NoContrast.
+
+    With moved specimens, or more strata than MANY_STRATA, the readings are first brought to
+    one effect a cell; where every cell of a stratum was measured under the same conditions
+    the estimates are the same either way.
+    """
     if len(s) < 2:
         raise NoContrast("fewer than two readings")
     columns = np.asarray(X, np.float64).reshape(len(s), -1)
-    specimen = combine(s.c.specimen)
     codes = combine(stratum)
-    if not moved(s):
-        mixed = fit_mixed(s.y, columns, specimen, codes, known=s.known)
-        return BetweenFit(mixed, float(mixed.sigma_within), False)
-    effects = _cell_effects(s, codes)
-    averaged = np.stack([means(column, effects.cell) for column in columns.T], axis=1)
-    mixed = fit_mixed(
-        effects.value, averaged, combine(specimen[effects.first]), effects.component,
-        known=effects.variance,
-    )  # fmt: skip
-    return BetweenFit(mixed, effects.sigma_within, True)
+    several = not one_row_a_cell(s)
+    if several and (moved(s) or int(codes.max()) >= MANY_STRATA):
+        r = reduced(s, codes)
+        averaged = np.stack([means(column, r.cell) for column in columns.T], axis=1)
+        mixed = fit_mixed(
+            r.sample.y, averaged, combine(r.sample.c.specimen), r.component, known=r.sample.known
+        )
+        return BetweenFit(mixed, r.sigma_within, True)
+    mixed = fit_mixed(s.y, columns, combine(s.c.specimen), codes, known=s.known)
+    return BetweenFit(mixed, float(mixed.sigma_within), False)
+
+
+def one_row_a_cell(s: Sample) -> bool:
+    """Return True where every cell has a single row, as after `reduced`."""
+    return len(np.unique(s.c.cell)) == len(s)
 
 
 def moved(s: Sample) -> bool:
     """Return True where a specimen was measured in more than one cell."""
     pairs = np.unique(np.stack([s.c.specimen, s.c.cell]), axis=1)
-    return len(np.unique(pairs[0])) < pairs.shape[1]
+    return bool(len(np.unique(pairs[0])) < pairs.shape[1])
 
 
 @dataclass(frozen=True)
-class _CellEffects:
-    """One effect for each cell and component of linked strata.
+class Reduced:
+    """One row for each cell and component of linked strata.
 
-    cell [n]: code of the effect a reading belongs to; first: a reading of each effect.
+    sample: y the effect of the cell, known its variance from the readings; component: code
+    of the linked strata a row belongs to; cell [n] and first: the row of each reading, and a
+    reading of each row.
     """
 
-    value: FloatArray
-    variance: FloatArray
+    sample: Sample
     component: IntArray
     cell: IntArray
     first: IntArray
     sigma_within: float
 
 
-def _cell_effects(s: Sample, stratum: IntArray) -> _CellEffects:
-    """Return least-squares cell effects, strata taken out, with their reading variance."""
+def reduced(s: Sample, stratum: IntArray) -> Reduced:
+    """Return least-squares cell effects with the strata taken out."""
+    if one_row_a_cell(s):
+        each = np.arange(len(s), dtype=np.int64)
+        return Reduced(s, combine(stratum), each, each, math.nan)
     component = _linked(s.c.cell, stratum)
     cell = combine(component, s.c.cell)
     n_cells, n_strata = int(cell.max()) + 1, int(stratum.max()) + 1
@@ -104,10 +120,10 @@ def _cell_effects(s: Sample, stratum: IntArray) -> _CellEffects:
     free = len(s) - n_strata - int(rank)
     variance = float(rest @ rest) / free if free > 0 else 0.0
     first = np.unique(cell, return_index=True)[1]
-    return _CellEffects(
-        effect, variance / per_cell, combine(component[first]), cell,
-        first.astype(np.int64), math.sqrt(variance) if free > 0 else math.nan,
-    )  # fmt: skip
+    rows = replace(s.take(first), y=effect, known=variance / per_cell)
+    return Reduced(
+        rows, combine(component[first]), cell, first, math.sqrt(variance) if free > 0 else math.nan
+    )
 
 
 def _linked(cell: IntArray, stratum: IntArray) -> IntArray:

@@ -30,7 +30,7 @@ from campaign.trends.results import (
     OrderEstimate,
     decision_text,
 )
-from campaign.trends.sample import SERIES, Sample, attempt, draw, series, source
+from campaign.trends.sample import SERIES, Sample, attempt, described, draw, series, source
 from campaign.trends.strata import combine
 
 SAME_LEVEL = 0.005
@@ -102,7 +102,8 @@ def order(
     concentrations = levels.medians(s.c.concentration, level)
     group = combine(*(getattr(s.c, name) for name in held)) if held else np.zeros_like(level)
     fitted = between.fit(s, x[:, None], stratum)
-    return _judge(s, fitted, _Parts(x, level, concentrations, stratum, group, tuple(held)), criteria)
+    parts = _Parts(x, level, concentrations, stratum, group, tuple(held))
+    return _judge(s, fitted, parts, criteria)
 
 
 @dataclass(frozen=True)
@@ -198,20 +199,14 @@ def _record(
     assert slope is not None
     alpha = criteria.error_probability
     return OrderEstimate(
-        electrode=s.electrode,
-        **held,
+        **described(s, held),
         order=slope.value,
         order_ci=slope.interval(1.0 - alpha),
         df=slope.df if math.isfinite(slope.se) else math.nan,
-        n_specimens=s.n_specimens,
-        n_measurements=len(s),
         sigma_between=fitted.fit.sigma_between,
         sigma_within=fitted.fit.sigma_within,
         decision=decision_text(finding, alpha),
         warnings=finding.warnings,
-        flagged_se=int(s.filled.sum()),
-        left_out=s.left_out,
-        rows=tuple(s.c.measurement.tolist()),
         adjusted=fitted.adjusted,
         outliers=outliers(s, fitted.fit),
         finding=finding,

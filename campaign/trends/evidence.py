@@ -82,6 +82,8 @@ def _barrier(s: Sample, criteria: Criteria) -> Finding:
 
 
 def _age(s: Sample, criteria: Criteria) -> Finding:
+    if not age.spans_enough(s):
+        raise NoContrast(age.TOO_YOUNG)
     return age.fit(s, criteria).finding
 
 

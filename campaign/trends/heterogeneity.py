@@ -74,10 +74,11 @@ def order_by_group(
     if len(groups) < 2:
         return None
     keep = np.isin(group, groups)
-    part, held, codes = s.take(keep), stratum[keep], combine(group[keep])
-    X = (codes[:, None] == np.arange(len(groups))[None, :]) * x[keep, None]
+    r = between.reduced(s.take(keep), combine(stratum[keep]))
+    codes = combine(group[keep])[r.first]
+    X = (codes[:, None] == np.arange(len(groups))[None, :]) * x[keep][r.first, None]
     try:
-        fit = between.fit(part, X, held)
+        fit = between.fit(r.sample, X, r.component)
         p, slopes = _equal(fit, -np.eye(len(groups)))
     except NoContrast:
         return None
@@ -94,9 +95,10 @@ def differences_by_group(
     if int(group.max()) == 0:
         return None
     n_levels = int(level.max()) + 1
-    both = group * n_levels + level
+    r = between.reduced(s, combine(stratum))
+    both = (group * n_levels + level)[r.first]
     try:
-        fitted = levels.fit_levels(s, both, stratum)
+        fitted = levels.fit_levels(r.sample, both, r.component)
     except NoContrast:
         return None
     pairs: dict[tuple[int, int], list[tuple[int, FloatArray]]] = {}

@@ -190,5 +190,10 @@ def _with_parameters(
     u_ci = Estimate(valley.log_g + u.value, u.se, u.df).interval(1.0 - alpha)
     return Law(
         "valley", scores, E0_V=valley.E0_V, E0_ci=E0_ci, g=math.exp(valley.log_g) - 4.0,
-        g_ci=None if u_ci is None else tuple(math.exp(min(end, 700.0)) - 4.0 for end in u_ci),
-    )  # type: ignore[arg-type]
+        g_ci=None if u_ci is None else (_interaction(u_ci[0]), _interaction(u_ci[1])),
+    )  # fmt: skip
+
+
+def _interaction(log_g: float) -> float:
+    """Return g [1] from ln(g + 4), without overflow."""
+    return math.exp(min(log_g, 700.0)) - 4.0

@@ -30,7 +30,7 @@ from campaign.trends.results import (
     RatioEstimate,
     decision_text,
 )
-from campaign.trends.sample import Sample, attempt, draw, source
+from campaign.trends.sample import Sample, attempt, described, draw, source
 from campaign.trends.strata import combine, match
 
 SAME_CONCENTRATION = 0.005
@@ -102,7 +102,7 @@ def estimate(
         except NoContrast as reason:
             left.append(LeftOut(str(reason), len(whole), electrode))
             continue
-        found += _records(fitted, criteria)
+        found += _records(fitted, criteria, how)
     return AxisResult(how.axis, response, unit(response), tuple(found), left_out=tuple(left))
 
 
@@ -204,7 +204,7 @@ def _splits(
         heterogeneity.differences_by_group(
             s, p.level, p.stratum, p.held, margin, name,
             lambda a, b: how.text(p.names[a], p.names[b]), how.shown,
-        )  # fmt: skip
+        )
     ]
     group = fitted.groups[0]
     if len(fitted.groups) == 1 and len(group) == len(p.names):
@@ -246,10 +246,10 @@ def _exp(interval: tuple[float, float] | None) -> tuple[float, float] | None:
     return None if interval is None else (math.exp(interval[0]), math.exp(interval[1]))
 
 
-def _records(fitted: PairsFit, criteria: Criteria) -> list[RatioEstimate]:
+def _records(fitted: PairsFit, criteria: Criteria, how: Comparison) -> list[RatioEstimate]:
     s, finding, alpha = fitted.sample, fitted.finding, criteria.error_probability
     shown = outliers(s, fitted.fit.fit)
-    common = _common(s, finding)
+    common = {**described(s, _recipe(s, how)), "warnings": finding.warnings}
     return [
         RatioEstimate(
             **common,
@@ -269,24 +269,11 @@ def _records(fitted: PairsFit, criteria: Criteria) -> list[RatioEstimate]:
     ]
 
 
-def _common(s: Sample, finding: Finding) -> dict[str, object]:
-    """Return the fields every estimate of one sample shares."""
-    return {
-        "electrode": s.electrode,
-        "salt": _only(s, "salt"),
-        "basis": _only(s, "basis"),
-        "solvents": "" if finding.axis == "solvent" else _only(s, "solvents"),
-        "additives": "" if finding.axis == "additive" else _only(s, "additives"),
-        "n_specimens": s.n_specimens,
-        "n_measurements": len(s),
-        "warnings": finding.warnings,
-        "flagged_se": int(s.filled.sum()),
-        "left_out": s.left_out,
-        "rows": tuple(s.c.measurement.tolist()),
-    }
+def _recipe(s: Sample, how: Comparison) -> dict[str, str]:
+    """Return the held recipe columns, joined where several strata were combined."""
+    return {name: _only(s, name) for name in how.held}
 
 
 def _only(s: Sample, column: str) -> str:
-    """Return the texts of a held column, joined where several strata were combined."""
     codes = np.unique(getattr(s.c, column))
     return "; ".join(s.c.name(column, int(code)) for code in codes)

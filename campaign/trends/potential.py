@@ -9,6 +9,7 @@ from __future__ import annotations
 
 import math
 from dataclasses import replace
+from typing import Any
 
 from campaign.ledger.criteria import Criteria
 from campaign.ledger.readings import Snapshot
@@ -20,7 +21,7 @@ from campaign.trends.laws import Law, choose
 from campaign.trends.pairs import simultaneous
 from campaign.trends.response import unit
 from campaign.trends.results import AxisResult, LeftOut, PotentialEstimate, decision_text
-from campaign.trends.sample import Sample, draw, series, source
+from campaign.trends.sample import Sample, described, draw, series, source
 
 PLATEAU = "in a declared two-phase plateau"
 
@@ -100,8 +101,7 @@ def _record(s: Sample, held: dict[str, str], criteria: Criteria) -> PotentialEst
     reference = held.pop("scale")
     value, interval = span_interval(found, alpha)
     return PotentialEstimate(
-        electrode=s.electrode,
-        **held,
+        **described(s, held),
         law=law.name,
         span=value,
         span_ci=interval,
@@ -111,21 +111,16 @@ def _record(s: Sample, held: dict[str, str], criteria: Criteria) -> PotentialEst
         aicc=law.aicc,
         levels=span.levels,
         df=span.df,
-        n_specimens=span.n_specimens,
-        n_measurements=len(s),
         sigma_between=span.sigma_between,
         sigma_within=span.sigma_within,
         decision=decision_text(found, alpha),
         warnings=(*found.warnings, *law.warnings),
-        flagged_se=int(s.filled.sum()),
-        left_out=s.left_out,
-        rows=tuple(s.c.measurement.tolist()),
         adjusted=span.adjusted,
         finding=found,
     )
 
 
-def _parameters(law: Law) -> dict[str, object]:
+def _parameters(law: Law) -> dict[str, Any]:
     names = ("E0_V", "E0_ci", "g", "g_ci", "slope_per_V", "slope_ci")
     return {name: getattr(law, name) for name in names}
 

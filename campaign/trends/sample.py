@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Iterator
+from collections.abc import Callable, Iterator, Mapping
 from dataclasses import dataclass, replace
 from typing import Any, TypeVar
 
@@ -21,6 +21,8 @@ from campaign.trends.state import NOT_COMPARABLE, state
 from campaign.trends.strata import combine
 
 T = TypeVar("T")
+
+IN_PLATEAU = "in a declared two-phase plateau, ion content not recorded"
 
 SERIES = ("salt", "solvents", "additives", "basis")
 
@@ -135,6 +137,19 @@ def series(s: Sample, by: tuple[str, ...] = SERIES) -> Iterator[tuple[dict[str, 
         yield {name: s.c.name(name, int(getattr(part.c, name)[0])) for name in by}, part
 
 
+def described(s: Sample, held: Mapping[str, str]) -> dict[str, Any]:
+    """Return the fields every estimate of a sample carries: what, how many, which rows."""
+    return {
+        "electrode": s.electrode,
+        **held,
+        "n_specimens": s.n_specimens,
+        "n_measurements": len(s),
+        "flagged_se": int(s.filled.sum()),
+        "left_out": s.left_out,
+        "rows": tuple(s.c.measurement.tolist()),
+    }
+
+
 def comparable(s: Sample) -> Sample:
     """Return the readings of `s` whose electrode state is held, with `state` coded.
 
@@ -145,7 +160,7 @@ def comparable(s: Sample) -> Sample:
     held = state(s.c)
     s = replace(s, state=held.code)
     if held.lost.any():
-        s = s.leaving(held.lost, "in a declared two-phase plateau, ion content not recorded")
+        s = s.leaving(held.lost, IN_PLATEAU)
         held = replace(held, held=held.held[~held.lost])
     if held.comparable:
         return s
@@ -155,21 +170,22 @@ def comparable(s: Sample) -> Sample:
 
 
 def not_comparable(s: Sample) -> Sample:
-    """Return all readings of `s` matched by whatever potential they have; decision open."""
+    """Return all readings of `s` matched by the potential as recorded; decision open."""
     held = state(s.c)
-    s = replace(s, state=held.code).leaving(
-        held.lost, "in a declared two-phase plateau, ion content not recorded"
-    )
+    s = replace(s, state=s.c.fixed).leaving(held.lost, IN_PLATEAU)
     return replace(s, open_because=NOT_COMPARABLE)
 
 
 def attempt(s: Sample, fit: Callable[[Sample], T]) -> T:
-    """Return `fit` of the readings whose state is held; where these show no contrast but
-    others would, of all of them with the decision open. Raises NoContrast."""
-    held = comparable(s)
+    """Return `fit` of the readings whose state is held.
+
+    Where these show no contrast, but readings at equal potentials against one reference
+    do, the fit of those is returned with the decision open. Raises NoContrast.
+    """
     try:
-        return fit(held)
-    except NoContrast:
-        if not any(gone.reason == NOT_COMPARABLE for gone in held.left_out):
-            raise
-        return fit(not_comparable(s))
+        return fit(comparable(s))
+    except NoContrast as reason:
+        try:
+            return fit(not_comparable(s))
+        except NoContrast:
+            raise reason from None

@@ -15,7 +15,7 @@ from campaign.trends.conditions import electrodes
 from campaign.trends.pairs import SOLVENT, PairsFit, compare
 from campaign.trends.pairs import estimate as estimate_pairs
 from campaign.trends.results import AxisResult, DonorEstimate
-from campaign.trends.sample import Sample, attempt, draw, source
+from campaign.trends.sample import Sample, attempt, described, draw, source
 from campaign.trends.strata import combine
 
 LEAST_SOLVENTS = 3
@@ -89,13 +89,11 @@ def on_donor_number(s: Sample, criteria: Criteria) -> DonorEstimate:
     slope = fitted.contrast(np.ones(1))
     used = {s.c.name("solvents", int(code)) for code in np.unique(s.c.solvents)}
     return DonorEstimate(
-        electrode=s.electrode,
+        **described(s, {}),
         slope=slope.value,
         slope_ci=slope.interval(1.0 - criteria.error_probability),
         donor_numbers={name: known[name] for name in sorted(used)},
         df=slope.df if math.isfinite(slope.se) else math.nan,
-        n_specimens=s.n_specimens,
-        n_measurements=len(s),
         sigma_between=fitted.sigma_between,
         sigma_within=fitted.sigma_within,
         decision=None,
@@ -104,6 +102,4 @@ def on_donor_number(s: Sample, criteria: Criteria) -> DonorEstimate:
             "donor numbers are those of the pure solvents (Gutmann), in kcal/mol; the slope is "
             "d ln R per kcal/mol and describes these solvents only",
         ),
-        left_out=s.left_out,
-        rows=tuple(s.c.measurement.tolist()),
     )

@@ -90,7 +90,7 @@ class _Part:
 def _of_scale(s: Sample, rows: BoolArray, criteria: Criteria) -> _Part:
     part = s.take(np.flatnonzero(rows))
     level, centres = group_levels(part.c.x_V, criteria.potential_tolerance_V)
-    mean, square, count, specimens = _paired(part, level, len(centres))
+    mean, square, count = _paired(part, level, len(centres))
     scale = part.c.name("scale", int(part.c.scale[0])) if len(np.unique(s.c.scale)) > 1 else ""
     names = [f"{centre:.4g} V {scale}".rstrip() for centre in centres]
     contrasts = []
@@ -112,7 +112,7 @@ def _of_scale(s: Sample, rows: BoolArray, criteria: Criteria) -> _Part:
 
 def _paired(
     s: Sample, level: IntArray, n_levels: int
-) -> tuple[FloatArray, FloatArray, IntArray, int]:
+) -> tuple[FloatArray, FloatArray, IntArray]:
     """Return mean, sum of squares and count over specimens of all level differences.
 
     Each (k, k), entry [b, a] for level b minus level a.
@@ -137,7 +137,7 @@ def _paired(
     count = seen.sum(axis=0)
     mean = own.sum(axis=0) / np.maximum(count, 1)
     square = (np.where(seen, own - mean, 0.0) ** 2).sum(axis=0)
-    return mean, square, count.astype(np.int64), n_specimens
+    return mean, square, count.astype(np.int64)
 
 
 def _within(s: Sample, inside: IntArray) -> float:

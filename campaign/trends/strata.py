@@ -96,14 +96,25 @@ def _split(distinct: FloatArray, low: int, high: int, widest: float) -> list[int
 
 
 def combine(*columns: npt.NDArray[np.int64]) -> IntArray:
-    """Return one code [n] a row, equal where all `columns` (integer codes >= -1) are equal."""
+    """Return one code [n] a row, equal where all `columns` (integer codes >= -1) are equal.
+
+    Codes run from 0 without gaps.
+    """
     total = np.zeros(len(columns[0]), np.int64)
+    if not len(total):
+        return total
+    size = 1
     for column in columns:
-        if not len(column):
-            return total
-        total = total * (int(column.max()) + 2) + column + 1
-        total = _compress(total)
-    return total
+        more = int(column.max()) + 2
+        if size * more > _LARGEST_CODE:
+            total = _compress(total)
+            size = int(total.max()) + 1
+        total = total * more + column + 1
+        size *= more
+    return _compress(total)
+
+
+_LARGEST_CODE = 2**40
 
 
 def _compress(codes: IntArray) -> IntArray:

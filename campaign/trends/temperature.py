@@ -7,6 +7,7 @@ from __future__ import annotations
 
 import math
 from dataclasses import replace
+from functools import partial
 
 import numpy as np
 
@@ -34,7 +35,7 @@ from campaign.trends.results import (
     LeftOut,
     decision_text,
 )
-from campaign.trends.sample import Sample, attempt, draw, series, source
+from campaign.trends.sample import Sample, attempt, described, draw, series, source
 
 
 def estimate(
@@ -59,7 +60,7 @@ def estimate(
         whole = replace(whole, left_out=())
         for held, part in series(whole):
             try:
-                found.append(attempt(part, lambda s, held=held: _record(s, held, criteria)))
+                found.append(attempt(part, partial(_record, held=held, criteria=criteria)))
             except NoContrast as reason:
                 where = {name: held[name] for name in ("salt", "solvents", "additives")}
                 left.append(LeftOut(str(reason), len(part), electrode, **where))
@@ -101,22 +102,16 @@ def _record(s: Sample, held: dict[str, str], criteria: Criteria) -> BarrierEstim
         warnings.append("one specimen: no interval between specimens")
     reason = s.open_because or s.pore_open
     return BarrierEstimate(
-        electrode=s.electrode,
-        **held,
+        **described(s, held),
         Ea_kJ_mol=plain.estimate.value,
         Ea_ci=plain.estimate.interval(1.0 - alpha),
         Ea_lnRT_kJ_mol=over_T.estimate.value,
         Ea_lnRT_ci=over_T.estimate.interval(1.0 - alpha),
         df=plain.estimate.df if plain.k > 1 else math.nan,
-        n_specimens=s.n_specimens,
-        n_measurements=len(s),
         sigma_between=plain.tau,
         sigma_within=found.slopes.sigma_within,
         decision=f"open: {reason}" if reason else None,
         warnings=tuple(warnings),
-        flagged_se=int(s.filled.sum()),
-        left_out=s.left_out,
-        rows=tuple(s.c.measurement.tolist()),
         adjusted=_adjusted(found, within[0], alpha) if within else None,
     )
 

@@ -6,11 +6,11 @@ from dataclasses import replace
 
 import numpy as np
 
-from campaign.ledger.readings import ElectrodeFacts, ElectrolyteFacts, Readings, Snapshot
+from campaign.ledger.readings import QUANTITIES, ElectrodeFacts, ElectrolyteFacts, Readings, Snapshot
 
 GAS = 8.314462618
 FARADAY = 96485.332
-QUANTITIES = ("R_el", "R_sl", "Q_sl", "n_sl", "R_ct", "Q_ct", "n_ct", "R_lat", "Q_lat", "n_lat", "sigma_w")
+
 START = 1.7e9
 
 
@@ -33,7 +33,10 @@ def readings(rows: list[dict]) -> Readings:
         if name == "specimen":
             return row.get("cell", "c1")
         if name == "electrolyte":
-            return f"{row.get('concentration', 1.0)} {row.get('salt', 'NaPF6')} {row.get('solvents', texts['solvents'])} {row.get('additives', 'none')}"
+            parts = ("salt", "solvents", "additives")
+            return f"{row.get('concentration', 1.0)} " + " ".join(
+                row.get(part, texts[part]) for part in parts
+            )
         return default
 
     columns: dict = {
@@ -53,7 +56,9 @@ def readings(rows: list[dict]) -> Readings:
         aqueous=np.zeros(len(rows), bool),
         values={q: np.array([row.get(q, np.nan) for row in rows], float) for q in QUANTITIES},
         se={q: np.array([row.get(q + "_se", np.nan) for row in rows], float) for q in QUANTITIES},
-        absent={q: np.array([q in row.get("absent", ()) for row in rows], bool) for q in QUANTITIES},
+        absent={
+            q: np.array([q in row.get("absent", ()) for row in rows], bool) for q in QUANTITIES
+        },
         **columns,
     )
 
