@@ -21,7 +21,14 @@ from campaign.trends.between import NoContrast
 from campaign.trends.conditions import DAY_s, electrodes
 from campaign.trends.findings import Contrast, Finding
 from campaign.trends.response import unit
-from campaign.trends.results import AgeEstimate, AxisResult, LeftOut, decision_text
+from campaign.trends.results import (
+    AgeEstimate,
+    AxisResult,
+    LeftOut,
+    decision_text,
+    ratio_of,
+    ratios_of,
+)
 from campaign.trends.sample import Sample, described, draw, series, source
 from campaign.trends.strata import combine as code
 
@@ -118,17 +125,14 @@ def spans_enough(s: Sample) -> bool:
     return bool(len(known)) and float(known.max()) >= LEAST_SPAN_d * DAY_s
 
 
-def _record(
-    fitted: AgeFit, held: dict[str, str], criteria: Criteria, law: str
-) -> AgeEstimate:
+def _record(fitted: AgeFit, held: dict[str, str], criteria: Criteria, law: str) -> AgeEstimate:
     s, alpha = fitted.sample, criteria.error_probability
     rate, drift = fitted.combined.estimate, fitted.drift
-    interval = drift.interval(1.0 - alpha)
     return AgeEstimate(
         **described(s, held),
         law=law,
-        drift=_exp(drift.value),
-        drift_ci=None if interval is None else (_exp(interval[0]), _exp(interval[1])),
+        drift=ratio_of(drift.value),
+        drift_ci=ratios_of(drift.interval(1.0 - alpha)),
         rate=rate.value,
         rate_ci=rate.interval(1.0 - alpha),
         rate_unit="1/d" if law == LOG_LINEAR else "1/sqrt(d)",
@@ -140,8 +144,3 @@ def _record(
         warnings=fitted.finding.warnings,
         finding=fitted.finding,
     )
-
-
-def _exp(value: float) -> float:
-    """Return exp(value), infinite instead of an overflow."""
-    return math.exp(value) if value < 700.0 else math.inf

@@ -65,12 +65,19 @@ def fit(s: Sample, X: npt.ArrayLike, stratum: IntArray) -> BetweenFit:
     if several and (moved(s) or int(codes.max()) >= MANY_STRATA):
         r = reduced(s, codes)
         averaged = np.stack([means(column, r.cell) for column in columns.T], axis=1)
-        mixed = fit_mixed(
-            r.sample.y, averaged, combine(r.sample.c.specimen), r.component, known=r.sample.known
-        )
+        mixed = _solved(r.sample, averaged, r.component)
         return BetweenFit(mixed, r.sigma_within, True)
-    mixed = fit_mixed(s.y, columns, combine(s.c.specimen), codes, known=s.known)
+    mixed = _solved(s, columns, codes)
     return BetweenFit(mixed, float(mixed.sigma_within), False)
+
+
+def _solved(s: Sample, X: FloatArray, stratum: IntArray) -> MixedFit:
+    """Return the mixed model; with equal weights where the errors differ beyond arithmetic."""
+    specimen = combine(s.c.specimen)
+    try:
+        return fit_mixed(s.y, X, specimen, stratum, known=s.known)
+    except np.linalg.LinAlgError:
+        return fit_mixed(s.y, X, specimen, stratum)
 
 
 def one_row_a_cell(s: Sample) -> bool:

@@ -29,6 +29,8 @@ from campaign.trends.results import (
     LevelRatio,
     OrderEstimate,
     decision_text,
+    ratio_of,
+    ratios_of,
 )
 from campaign.trends.sample import SERIES, Sample, attempt, described, draw, series, source
 from campaign.trends.strata import combine
@@ -75,9 +77,7 @@ def estimate(
             except NoContrast as reason:
                 where = {name: held[name] for name in ("salt", "solvents", "additives")}
                 left.append(LeftOut(str(reason), len(part), electrode, **where))
-    return AxisResult(
-        "concentration", response, unit(response), tuple(found), left_out=tuple(left)
-    )
+    return AxisResult("concentration", response, unit(response), tuple(found), left_out=tuple(left))
 
 
 def order(
@@ -159,9 +159,7 @@ def _levels(s: Sample, p: _Parts) -> tuple[tuple[Contrast, ...], float | None]:
     return contrasts, heterogeneity.lack_of_fit(fitted, contrasts, medians_of_x)
 
 
-def _splits(
-    s: Sample, slope: float, p: _Parts, criteria: Criteria
-) -> list[heterogeneity.Split]:
+def _splits(s: Sample, slope: float, p: _Parts, criteria: Criteria) -> list[heterogeneity.Split]:
     """Return the significant differences of the order between strata."""
     margin = criteria.order_margin
     found = []
@@ -212,14 +210,9 @@ def _record(
         finding=finding,
         levels=fitted.levels,
         ratios=tuple(
-            LevelRatio(c.a, c.b, math.exp(c.estimate.value), exponential(c.estimate, alpha))
+            LevelRatio(c.a, c.b, ratio_of(e.value), ratios_of(e.interval(1.0 - alpha)))
             for c in finding.contrasts
+            for e in (c.estimate,)
         ),
         in_activity=activity,
     )
-
-
-def exponential(e: Estimate, alpha: float) -> tuple[float, float] | None:
-    """Return the interval of a ratio from the estimate of its logarithm."""
-    interval = e.interval(1.0 - alpha)
-    return None if interval is None else (math.exp(interval[0]), math.exp(interval[1]))

@@ -126,9 +126,7 @@ def _correlation(X: FloatArray, z: FloatArray) -> float | None:
     return math.sqrt(max(0.0, 1.0 - unexplained * (n - 1) / (n - 1 - k)))
 
 
-def _by_batch(
-    s: Sample, X: FloatArray, cell: IntArray, criteria: Criteria
-) -> Confounder | None:
+def _by_batch(s: Sample, X: FloatArray, cell: IntArray, criteria: Criteria) -> Confounder | None:
     """Return the batch as a confounder where it explains one axis column."""
     if X.shape[1] != 1 or not np.isfinite(s.c.assembled_day).all():
         return None

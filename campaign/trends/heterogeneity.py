@@ -196,9 +196,7 @@ def _changed(
     ends = float(z.min()), float(z.max())
     at = [effects + per_unit * (end - float(z.mean())) for end in ends]
     worst = int(np.argmax(np.abs(per_unit)))
-    apart = any(
-        zone(float(a), margin) != zone(float(b), margin) for a, b in zip(*at, strict=True)
-    )
+    apart = any(zone(float(a), margin) != zone(float(b), margin) for a, b in zip(*at, strict=True))
     p = wald(per_unit, cov, df)
     said = " and ".join(
         f"{texts[worst].format(shown(float(effect[worst])))} at {end:.4g} {unit}"

@@ -76,9 +76,7 @@ class _Curves:
 
     def shape(self, E0_V: float, log_g: float) -> FloatArray:
         """Return the centred valley -1/2 ln(4 theta(1 - theta)), g = exp(log_g) - 4."""
-        pairs, where = np.unique(
-            np.stack([self.raw_V, self.T]), axis=1, return_inverse=True
-        )
+        pairs, where = np.unique(np.stack([self.raw_V, self.T]), axis=1, return_inverse=True)
         g = math.exp(log_g) - 4.0
         curve = np.log(valley_resistance(pairs[0], E0_V, g, 1.0, pairs[1], self.charge))
         return centred(curve[where.reshape(-1)], self.block)
@@ -130,9 +128,7 @@ def _chosen(
         return Law("open", scores, warnings=(text,))
     if best == "exponential":
         slope = curves.fit(curves.y, [curves.x], "REML").contrast([0.0, 1.0])
-        return Law(
-            best, scores, slope_per_V=slope.value, slope_ci=slope.interval(1.0 - alpha)
-        )
+        return Law(best, scores, slope_per_V=slope.value, slope_ci=slope.interval(1.0 - alpha))
     if best == "valley" and valley is not None:
         return _with_parameters(scores, curves, valley, alpha)
     return Law(best, scores)

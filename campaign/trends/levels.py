@@ -71,9 +71,7 @@ def fit_levels(
 def all_pairs(fitted: LevelFit, names: Sequence[str]) -> tuple[Contrast, ...]:
     """Return every difference between two linked levels, the later named first."""
     return tuple(
-        fitted.difference(b, a, names)
-        for group in fitted.groups
-        for a, b in combinations(group, 2)
+        fitted.difference(b, a, names) for group in fitted.groups for a, b in combinations(group, 2)
     )
 
 

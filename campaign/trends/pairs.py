@@ -29,6 +29,8 @@ from campaign.trends.results import (
     LeftOut,
     RatioEstimate,
     decision_text,
+    ratio_of,
+    ratios_of,
 )
 from campaign.trends.sample import Sample, attempt, described, draw, source
 from campaign.trends.strata import combine, match
@@ -54,19 +56,21 @@ class Comparison:
 
     def margin(self, criteria: Criteria) -> float:
         """Return the margin of a difference, in the unit of y."""
-        return math.log(criteria.ratio_margin) if self.logarithm else (
-            criteria.barrier_margin_kJ_mol
+        return (
+            math.log(criteria.ratio_margin) if self.logarithm else (criteria.barrier_margin_kJ_mol)
         )
 
     def text(self, a: str, b: str) -> str:
         """Return how the difference of levels a and b is written, with a placeholder."""
-        return f"R({a})/R({b}) " + "{:.2f}" if self.logarithm else (
-            f"barrier({a}) - barrier({b}) " + "{:.1f} kJ/mol"
+        return (
+            f"R({a})/R({b}) " + "{:.2f}"
+            if self.logarithm
+            else (f"barrier({a}) - barrier({b}) " + "{:.1f} kJ/mol")
         )
 
     def shown(self, value: float) -> float:
         """Return a difference of y as a ratio, or as it is."""
-        return math.exp(value) if self.logarithm else value
+        return ratio_of(value) if self.logarithm else value
 
 
 SOLVENT = Comparison("solvent", "solvents", ("salt", "additives", "basis"))
@@ -95,10 +99,10 @@ def estimate(
     for electrode in electrodes(snapshot):
         whole = draw(snapshot, source(snapshot, criteria, electrode, scale), response, porous)
         left += whole.left_out
+        if not len(whole):
+            continue
         try:
-            fitted = attempt(
-                replace(whole, left_out=()), lambda s: compare(s, criteria, how)
-            )
+            fitted = attempt(replace(whole, left_out=()), lambda s: compare(s, criteria, how))
         except NoContrast as reason:
             left.append(LeftOut(str(reason), len(whole), electrode))
             continue
@@ -194,16 +198,20 @@ def _splits(
 
     def name(code: int) -> str:
         at = int(first[code])
-        recipe = [
-            s.c.name(c, int(getattr(s.c, c)[at])) for c in how.held if c != "basis"
-        ]
+        recipe = [s.c.name(c, int(getattr(s.c, c)[at])) for c in how.held if c != "basis"]
         return " / ".join([f"{s.c.concentration[at]:.4g} {s.c.name('basis', int(s.c.basis[at]))}",
                            *recipe])  # fmt: skip
 
     found = [
         heterogeneity.differences_by_group(
-            s, p.level, p.stratum, p.held, margin, name,
-            lambda a, b: how.text(p.names[a], p.names[b]), how.shown,
+            s,
+            p.level,
+            p.stratum,
+            p.held,
+            margin,
+            name,
+            lambda a, b: how.text(p.names[a], p.names[b]),
+            how.shown,
         )
     ]
     group = fitted.groups[0]
@@ -242,10 +250,6 @@ def simultaneous(e: Estimate, finding: Finding, alpha: float) -> tuple[float, fl
     return simultaneous_interval(e, finding.family, finding.n_levels, count, alpha)
 
 
-def _exp(interval: tuple[float, float] | None) -> tuple[float, float] | None:
-    return None if interval is None else (math.exp(interval[0]), math.exp(interval[1]))
-
-
 def _records(fitted: PairsFit, criteria: Criteria, how: Comparison) -> list[RatioEstimate]:
     s, finding, alpha = fitted.sample, fitted.finding, criteria.error_probability
     shown = outliers(s, fitted.fit.fit)
@@ -255,8 +259,8 @@ def _records(fitted: PairsFit, criteria: Criteria, how: Comparison) -> list[Rati
             **common,
             a=c.a,
             b=c.b,
-            ratio=math.exp(c.estimate.value),
-            ratio_ci=_exp(simultaneous(c.estimate, finding, alpha)),
+            ratio=ratio_of(c.estimate.value),
+            ratio_ci=ratios_of(simultaneous(c.estimate, finding, alpha)),
             df=c.estimate.df if math.isfinite(c.estimate.se) else math.nan,
             sigma_between=fitted.fit.fit.sigma_between,
             sigma_within=fitted.fit.fit.sigma_within,

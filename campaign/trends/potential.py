@@ -20,7 +20,14 @@ from campaign.trends.findings import Finding
 from campaign.trends.laws import Law, choose
 from campaign.trends.pairs import simultaneous
 from campaign.trends.response import unit
-from campaign.trends.results import AxisResult, LeftOut, PotentialEstimate, decision_text
+from campaign.trends.results import (
+    AxisResult,
+    LeftOut,
+    PotentialEstimate,
+    decision_text,
+    ratio_of,
+    ratios_of,
+)
 from campaign.trends.sample import Sample, described, draw, series, source
 
 PLATEAU = "in a declared two-phase plateau"
@@ -138,7 +145,7 @@ def span_interval(found: Finding, alpha: float) -> tuple[float, tuple[float, flo
         if (limit := simultaneous(c.estimate, found, alpha)) is not None
     ]
     if not limits:
-        return math.exp(value), None
+        return ratio_of(value), None
     low = max(0.0, *(max(a, -b) for a, b in limits))
     high = max(max(-a, b) for a, b in limits)
-    return math.exp(value), (math.exp(low), math.exp(high))
+    return ratio_of(value), ratios_of((low, high))

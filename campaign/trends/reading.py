@@ -26,9 +26,7 @@ FilterSource = Callable[["Connection"], Filter]
 AXES = ("concentration", "solvent", "additive", "potential", "temperature", "age")
 
 
-def read_campaign(
-    db: str | None, wanted: FilterSource | None = None
-) -> tuple[Snapshot, Criteria]:
+def read_campaign(db: str | None, wanted: FilterSource | None = None) -> tuple[Snapshot, Criteria]:
     """Return what the filter keeps of a campaign, and the criteria that stood then."""
     with open_database(db).reading() as connection:
         asked = wanted(connection) if wanted is not None else Filter()

@@ -16,6 +16,9 @@ from campaign.ledger.readings import BoolArray, FloatArray, Readings
 from campaign.trends.pores import Pores
 
 ARCS = ("R_sl", "R_ct", "R_lat")
+LARGEST_RELATIVE_ERROR = 10.0
+"""A fit that wrong carries no weight whatever its error was; larger ones are cut to this."""
+
 RESPONSES = ("R_el", "R_sl", "R_ct", "R_lat", "R_int", "sigma_w")
 
 
@@ -61,7 +64,8 @@ def respond(readings: Readings, name: str, pores: Pores | None = None) -> Respon
     filled = whole.filled & np.isfinite(value)
     with np.errstate(invalid="ignore", divide="ignore"):
         y = np.where(value > 0, np.log(value), np.nan)
-        variance = np.where(np.isfinite(y), (error / value) ** 2, np.nan)
+        relative = np.minimum(error / value, LARGEST_RELATIVE_ERROR)
+        variance = np.where(np.isfinite(y), relative**2, np.nan)
     variance = np.where(np.isfinite(y) & ~np.isfinite(variance), 0.0, variance)
     warnings = [text for part in solved for text in part.warnings]
     if filled.any():

@@ -15,11 +15,21 @@ from campaign.trends.findings import Finding
 Interval = tuple[float, float] | None
 
 
+def ratio_of(log_ratio: float) -> float:
+    """Return exp(log_ratio), infinite instead of an overflow."""
+    return math.exp(log_ratio) if log_ratio < 700.0 else math.inf
+
+
+def ratios_of(interval: Interval) -> Interval:
+    """Return the interval of a ratio from that of its logarithm."""
+    return None if interval is None else (ratio_of(interval[0]), ratio_of(interval[1]))
+
+
 def plain(value: object) -> Any:
     """Return `value` as JSON-ready Python: records as dicts, NaN and infinity as None."""
     if is_dataclass(value) and not isinstance(value, type):
         return {
-            column.name: plain(getattr(value, column.name))
+            column.name: _field(column.name, plain(getattr(value, column.name)))
             for column in fields(value)
             if column.metadata.get("json", True)
         }
@@ -31,6 +41,13 @@ def plain(value: object) -> Any:
         return plain(value.tolist())
     if isinstance(value, float):
         return value if math.isfinite(value) else None
+    return value
+
+
+def _field(name: str, value: Any) -> Any:
+    """Return an interval without a finite end as None, anything else as it is."""
+    if name.endswith("ci") and isinstance(value, list) and None in value:
+        return None
     return value
 
 

@@ -20,7 +20,7 @@ from campaign.trends import confounding
 from campaign.trends.between import NoContrast, lone
 from campaign.trends.findings import Contrast
 from campaign.trends.levels import group_levels
-from campaign.trends.results import Adjusted
+from campaign.trends.results import Adjusted, ratio_of, ratios_of
 from campaign.trends.sample import Sample
 from campaign.trends.strata import centred, combine, means
 
@@ -110,9 +110,7 @@ def _of_scale(s: Sample, rows: BoolArray, criteria: Criteria) -> _Part:
     return _Part(tuple(contrasts), tuple(centres.tolist()), window, df, sigma)
 
 
-def _paired(
-    s: Sample, level: IntArray, n_levels: int
-) -> tuple[FloatArray, FloatArray, IntArray]:
+def _paired(s: Sample, level: IntArray, n_levels: int) -> tuple[FloatArray, FloatArray, IntArray]:
     """Return mean, sum of squares and count over specimens of all level differences.
 
     Each (k, k), entry [b, a] for level b minus level a.
@@ -157,10 +155,7 @@ def _adjusted(
         return Adjusted(confounder.name, math.nan, None)
     part = _of_scale(corrected, s.c.scale == s.c.scale[0], criteria)
     largest = max(part.contrasts, key=lambda c: abs(c.estimate.value)).estimate
-    sign = math.copysign(1.0, largest.value)
     interval = largest.interval(1.0 - criteria.error_probability)
-    ci = None
-    if interval is not None:
-        low, high = sorted(math.exp(sign * end) for end in interval)
-        ci = (low, high)
-    return Adjusted(confounder.name, math.exp(abs(largest.value)), ci)
+    if interval is not None and largest.value < 0:
+        interval = (-interval[1], -interval[0])
+    return Adjusted(confounder.name, ratio_of(abs(largest.value)), ratios_of(interval))

@@ -127,9 +127,7 @@ def _combined(found: Barriers) -> Combined:
     return combine(strata.means(rows.y, code), np.bincount(code, rows.known) / count**2)
 
 
-def _adjusted(
-    found: Barriers, confounder: confounding.Confounder, alpha: float
-) -> Adjusted:
+def _adjusted(found: Barriers, confounder: confounding.Confounder, alpha: float) -> Adjusted:
     corrected = confounding.without_drift(
         found.sample, confounder, found.inside, found.sample.c.temperature
     )
@@ -139,9 +137,7 @@ def _adjusted(
     return Adjusted(confounder.name, e.value, e.interval(1.0 - alpha))
 
 
-def _differences(
-    s: Sample, criteria: Criteria, how: Comparison
-) -> list[BarrierDifference]:
+def _differences(s: Sample, criteria: Criteria, how: Comparison) -> list[BarrierDifference]:
     try:
         fitted = attempt(s, lambda part: fit(part, criteria, how))
     except NoContrast:

@@ -6,7 +6,13 @@ from dataclasses import replace
 
 import numpy as np
 
-from campaign.ledger.readings import QUANTITIES, ElectrodeFacts, ElectrolyteFacts, Readings, Snapshot
+from campaign.ledger.readings import (
+    QUANTITIES,
+    ElectrodeFacts,
+    ElectrolyteFacts,
+    Readings,
+    Snapshot,
+)
 
 GAS = 8.314462618
 FARADAY = 96485.332

@@ -23,7 +23,9 @@ def same(codes) -> bool:
 
 
 def test_recorded_ion_content_comes_first():
-    rows = [{"ion_content": x, "potential_V": E, "E_half_V": 0.0} for x, E in ((0.5, 3.0), (0.51, 3.4))]
+    rows = [
+        {"ion_content": x, "potential_V": E, "E_half_V": 0.0} for x, E in ((0.5, 3.0), (0.51, 3.4))
+    ]
     held = state(coded(rows))
     assert same(held.code) and held.comparable
 
@@ -38,7 +40,10 @@ def test_then_the_distance_from_half_filling_whatever_the_reference():
 
 
 def test_then_the_same_ions_electrode_but_not_another_metal():
-    own = [{"reference": "Na/Na+", "potential_V": 3.0}, {"reference": "Na/Na+", "potential_V": 3.002}]
+    own = [
+        {"reference": "Na/Na+", "potential_V": 3.0},
+        {"reference": "Na/Na+", "potential_V": 3.002},
+    ]
     assert same(state(coded(own)).code) and state(coded(own)).comparable
     other = [{**row, "reference": "Li/Li+"} for row in own]
     assert not state(coded(other)).held.any()
@@ -50,7 +55,9 @@ def test_a_fixed_reference_does_not_hold_the_state():
 
 
 def test_symmetric_cells_without_potential_are_comparable():
-    held = state(coded([{"configuration": "symmetric", "potential_V": np.nan, "reference": ""}] * 3))
+    held = state(
+        coded([{"configuration": "symmetric", "potential_V": np.nan, "reference": ""}] * 3)
+    )
     assert same(held.code) and held.comparable
 
 
