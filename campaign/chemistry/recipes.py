@@ -115,7 +115,7 @@ def salt_key_of(text: str, extra: Sequence[Species] = ()) -> str:
     scanner = _scanner(text, extra)
     names, parts, start = read_salts(scanner)
     _refuse_repeated_names(scanner, names)
-    if len(names) > 1 and len(parts) != len(names):
+    if len(parts) != len(names) and (parts or len(names) > 1):
         raise _wrong_count(scanner, len(names), len(parts), "salts", start)
     return _salt_key_text(scanner, [n.text for n in names], parts or [Fraction(1)], start)
 

@@ -1,5 +1,7 @@
 """Properties of the recipe notation: round trips, order, and nothing but RecipeError."""
 
+from collections.abc import Callable
+
 from hypothesis import given, settings
 from hypothesis import strategies as st
 
@@ -103,6 +105,20 @@ def test_any_text_is_read_or_refused(text: str) -> None:
 @settings(max_examples=500)
 def test_any_pieces_are_read_or_refused(text: str) -> None:
     reads_or_refuses(text)
+
+
+@given(
+    st.sampled_from([salt_key_of, solvent_key_of, additive_key_of]),
+    st.lists(PIECES, max_size=8).map("".join),
+)
+@settings(max_examples=500)
+def test_any_filter_is_read_or_refused(read: Callable[[str], str], text: str) -> None:
+    try:
+        key = read(text)
+    except RecipeError as error:
+        assert 0 <= error.position <= len(text)
+        return
+    assert read(key) == key
 
 
 @given(st.integers(5, 200), PIECES, PIECES)

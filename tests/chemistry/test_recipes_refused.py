@@ -121,6 +121,7 @@ def test_positions_count_characters_as_typed() -> None:
         (salt_key_of, "", 0),
         (salt_key_of, "NaPF6:NaTFSI", 12),
         (salt_key_of, "NaPF6:NaPF6 (1:1)", 6),
+        (salt_key_of, "NaPF6 1:1", 6),
         (salt_key_of, "NaPF6 in PC", 6),
         (salt_key_of, "NaPF6:NaTFSI (1:1 v/v)", 14),
         (additive_key_of, "", 0),
