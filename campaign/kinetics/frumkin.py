@@ -41,11 +41,13 @@ def _log_odds_empty(reduced: FloatArray, interaction: float) -> FloatArray:
     """Solve u = y - g(theta - 1/2) for y = ln((1-theta)/theta), theta = 1/(1 + e^y).
 
     The right side rises in y for g > -4 and |theta - 1/2| < 1/2 brackets the root in
-    [u - |g|/2, u + |g|/2]; Newton steps that leave the bracket are replaced by its middle.
+    [u - |g|/2, u + |g|/2]. A Newton step that leaves the bracket, or is not half as long as
+    the one before (it may run in a cycle), is replaced by the bracket's middle.
     """
     low = reduced - abs(interaction) / 2
     high = reduced + abs(interaction) / 2
     y = reduced.copy()
+    last = high - low
     for _ in range(200):
         half = np.tanh(y / 2) / 2  # 1/2 - theta
         excess = y + interaction * half - reduced
@@ -53,7 +55,9 @@ def _log_odds_empty(reduced: FloatArray, interaction: float) -> FloatArray:
         low = np.where(excess > 0, low, y)
         slope = 1 + interaction * (0.25 - half**2)
         step = y - excess / np.where(slope > 1e-12, slope, 1e-12)
-        new = np.where((step >= low) & (step <= high), step, (low + high) / 2)
+        good = (step >= low) & (step <= high) & (np.abs(step - y) <= last / 2)
+        new = np.where(good, step, (low + high) / 2)
+        last = np.abs(new - y)
         if np.all(np.abs(new - y) <= 1e-14 * (1 + np.abs(y))):
             return np.asarray(new)
         y = new
