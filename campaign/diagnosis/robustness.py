@@ -26,6 +26,10 @@ STEP: Final = 0.25
 RATIOS: Final = ("ratio_margin",)
 """Criteria that are factors: a quarter is taken of their logarithm."""
 
+ALPHA: Final = "error_probability"
+LARGEST_ALPHA: Final = 0.49
+"""Error probability below which a decision is defined [1]: unresponsive needs 1 - 2 alpha > 0."""
+
 TRIED: Final = (
     "order_margin", "ratio_margin", "barrier_margin_kJ_mol", "error_probability",
     "potential_window_V", "working_time_s",
@@ -129,7 +133,7 @@ def criteria_tried(criteria: Criteria) -> Iterator[tuple[str, Criteria]]:
                 moved = math.exp(math.log(value) * (1 + sign * STEP))
             else:
                 moved = value * (1 + sign * STEP)
-            moved = min(max(moved, low), high)
+            moved = min(max(moved, low), high, LARGEST_ALPHA if name == ALPHA else high)
             if moved != value:
                 label = f"{name} a quarter {word} ({moved:.3g})"
                 yield label, replace(criteria, **{name: moved})

@@ -4,10 +4,14 @@ import json
 
 import numpy as np
 import pytest
+from hypothesis import HealthCheck, given, settings
+from hypothesis import strategies as st
 
 from campaign.diagnosis.explain import explain, to_dict
 from campaign.diagnosis.robustness import criteria_tried, robustness, strata
+from campaign.diagnosis.signatures import AXES, RESPONSES
 from campaign.diagnosis.summary import diagnose, to_row
+from campaign.diagnosis.verdict import WORDS
 from campaign.errors import Refused
 from campaign.ledger.criteria import Criteria
 from campaign.ledger.readings import Snapshot
@@ -282,3 +286,42 @@ def test_explaining_an_unknown_electrode_is_refused(snapshot_of, source):
     with pytest.raises(Refused, match="no measurements of electrode 'Z'") as caught:
         explain(snapshot_of(cells()), CRITERIA, "Z", evidence=source())
     assert caught.value.faults[0].expected == "one of A"
+
+
+def test_an_empty_snapshot_has_no_rows(snapshot_of, source):
+    assert diagnose(snapshot_of([]), CRITERIA, evidence=source()) == []
+
+
+SAID = ("responds", "responds, inverse", "unresponsive", "open")
+POSITIVE = st.floats(1e-6, 1e6)
+ARC = st.fixed_dictionaries(
+    {"R_ct": POSITIVE},
+    optional={
+        "R_el": POSITIVE, "R_sl": POSITIVE, "R_lat": POSITIVE, "sigma_w": POSITIVE,
+        "Q_ct": st.floats(1e-12, 1e2), "n_ct": st.floats(0.05, 1), "Q_lat": POSITIVE,
+        "n_lat": st.floats(0.05, 1), "specimen": st.sampled_from("abcd"),
+        "electrolyte": st.sampled_from(["e1", "e2"]), "solvents": st.sampled_from(["PC", "EC"]),
+        "concentration": st.sampled_from([0.1, 1.0]),
+        "temperature_K": st.sampled_from([298.15, 318.15]),
+        "potential_V": st.sampled_from([3.0, 3.2, float("nan")]),
+        "ion_content": st.sampled_from([0.3, 0.5]), "aqueous": st.booleans(),
+        "configuration": st.sampled_from(["symmetric", "two-electrode"]),
+        "measured_at": st.floats(0, 1e7),
+    },
+)  # fmt: skip
+
+
+@settings(
+    max_examples=60, deadline=None, suppress_health_check=[HealthCheck.function_scoped_fixture]
+)
+@given(data=st.data())
+def test_any_readings_give_a_row_without_nan(snapshot_of, source, data):
+    snapshot = snapshot_of(data.draw(st.lists(ARC, min_size=1, max_size=12)))
+    said = st.dictionaries(st.sampled_from(AXES), st.sampled_from(SAID))
+    stated = source(**{response: data.draw(said) for response in RESPONSES})
+    for found in diagnose(snapshot, CRITERIA, evidence=stated):
+        row = json.loads(json.dumps(to_row(found), allow_nan=False))
+        assert row["verdict"] in WORDS
+        assert (row["strength"] is None) == (row["verdict"] in ("undetermined", "conflicting"))
+        shares = [row["budget"][term] for term in found.budget.shares] if found.budget else [1]
+        assert sum(shares) == pytest.approx(1)
