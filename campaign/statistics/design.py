@@ -73,6 +73,8 @@ def prepare(
     of_specimen = _codes("specimen", specimen, n)
     if n == 0:
         raise NoContrast("no readings")
+    if not columns.shape[1]:
+        raise NoContrast("no column to estimate")
     s = 0
     of_stratum = np.zeros(n, dtype=np.intp)
     if stratum is not None:
@@ -152,8 +154,6 @@ def _centre(columns: Array, stratum: Codes, s: int) -> tuple[Array, Array]:
 
 def _refuse_aliased(columns: Array, centred: Array) -> None:
     p = columns.shape[1]
-    if not p:
-        raise NoContrast("no column to estimate")
     left = np.sqrt(np.sum(centred**2, axis=0))
     flat = left <= _ALIASED * np.sqrt(np.sum(columns**2, axis=0))
     if flat.any():

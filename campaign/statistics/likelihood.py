@@ -120,6 +120,8 @@ def _inverse(blocks: Array) -> tuple[Array, float]:
 
 def _spd_inverse(matrix: Array) -> tuple[Array, float]:
     """Return the inverse and ln determinant of a symmetric positive matrix, scaled first."""
+    if not (matrix.diagonal() > 0).all():
+        raise np.linalg.LinAlgError("not positive definite")
     scale: Array = 1.0 / np.sqrt(matrix.diagonal())
     factor = np.asarray(np.linalg.cholesky(scale[:, None] * matrix * scale), dtype=np.float64)
     half = np.asarray(np.linalg.inv(factor), dtype=np.float64) * scale

@@ -31,14 +31,16 @@ from campaign.statistics import outliers
 from campaign.statistics.design import Design, NoContrast, Term, prepare, terms
 from campaign.statistics.estimate import Estimate
 from campaign.statistics.likelihood import Likelihood, Point
-from campaign.statistics.optimise import Mask, maximise
+from campaign.statistics.optimise import Mask, maximise, solve
 from campaign.statistics.sums import Array, Data, grams
 
 Method = Literal["REML", "ML"]
 
 __all__ = ["Method", "MixedFit", "NoContrast", "fit_mixed"]
 
-_FLOOR = 1e-10
+# least sigma_within^2, in units of the scatter about the fixed effects: a smaller one would lose
+# the scatter between specimens to rounding
+_FLOOR = 1e-8
 
 
 @dataclass(frozen=True)
@@ -154,9 +156,7 @@ class MixedFit:
         slope[1:] = ((point.rz @ carried) ** 2).sum(axis=0)
         slope = slope[free]
         info = point.information[np.ix_(free, free)]
-        unit = 1.0 / np.sqrt(np.maximum(info.diagonal(), 1e-300))
-        scaled = info * unit[:, None] * unit
-        about = float(slope * unit @ np.linalg.lstsq(scaled, slope * unit, rcond=1e-12)[0])
+        about = float(slope @ solve(info, slope))
         return 2 * variance**2 / about if about > 0 else math.inf
 
 

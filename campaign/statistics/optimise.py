@@ -1,8 +1,8 @@
 """Fisher scoring for variances that may be exactly zero.
 
-theta <- theta + I(theta)^-1 s(theta), with the expected information I and the score s, is
-projected on theta_k >= 0: a variance driven below zero is set to zero exactly and released
-again only if the likelihood rises away from zero. Steps are halved until the likelihood rises.
+Steps I^-1 s, with the expected information I and the score s, are projected on g_k >= 0: a variance driven below zero is set to zero exactly and
+released again only if the likelihood rises away from zero. Steps are halved until the
+likelihood rises.
 
 [1] Harville, J. Am. Stat. Assoc. 72 (1977) 320 (scoring for variance components);
     Bertsekas, SIAM J. Control Optim. 20 (1982) 221 (projected Newton steps).
@@ -21,6 +21,7 @@ Mask = npt.NDArray[np.bool_]
 _STEPS = 200
 _HALVINGS = 30
 _DECREMENT = 1e-13
+_SHRINK = 0.05
 
 
 def maximise(likelihood: Likelihood, starts: list[Array], free: Mask, floor: float) -> Point:
@@ -55,22 +56,33 @@ def _climb(likelihood: Likelihood, start: Array, free: Mask, floor: float) -> Po
 
 
 def _step(point: Point, free: Mask, lowest: Array) -> tuple[Array, float]:
-    """Return the scoring step of the parameters that may move, and the gain it promises."""
-    held = (point.theta <= lowest) & (point.score <= 0)
+    """Return the step of what may move, and twice the gain it promises."""
+    score, information = point.score, point.information
+    held = (point.theta <= lowest) & (score <= 0)
     moving = np.flatnonzero(free & ~held)
-    step = np.zeros(point.theta.size)
+    step = np.zeros(score.size)
     while moving.size:
-        unit = 1.0 / np.sqrt(np.maximum(point.information[moving, moving], 1e-300))
-        scaled = point.information[np.ix_(moving, moving)] * unit[:, None] * unit
-        score = point.score[moving]
         step[:] = 0.0
-        step[moving] = unit * np.linalg.lstsq(scaled, unit * score, rcond=1e-12)[0]
+        step[moving] = solve(information[np.ix_(moving, moving)], score[moving])
         # one at its bound that the joint step would push out stays where it is
         out = (point.theta[moving] <= lowest[moving]) & (step[moving] < 0)
         if not out.any():
-            return step, float(step[moving] @ score)
+            return step, float(step[moving] @ score[moving])
         moving = moving[~out]
-    return np.zeros(point.theta.size), 0.0
+    return np.zeros(score.size), 0.0
+
+
+def solve(information: Array, score: Array) -> Array:
+    """Return information^-1 score; directions the data say nothing of are left alone."""
+    diagonal = information.diagonal()
+    seen = diagonal > 0  # rounding can leave it negative at extreme ratios of variances
+    unit = np.zeros(diagonal.size)
+    unit[seen] = 1.0 / np.sqrt(diagonal[seen])
+    values, vectors = np.linalg.eigh(unit[:, None] * information * unit)
+    usable = values > 1e-10
+    part = vectors[:, usable]
+    step: Array = unit * (part @ ((part.T @ (unit * score)) / values[usable]))
+    return step
 
 
 def _search(likelihood: Likelihood, point: Point, step: Array, lowest: Array) -> Point | None:
@@ -78,9 +90,16 @@ def _search(likelihood: Likelihood, point: Point, step: Array, lowest: Array) ->
     size = 1.0
     for _ in range(_HALVINGS):
         theta = np.maximum(point.theta + size * step, lowest)
-        theta[0] = max(theta[0], 0.05 * point.theta[0])
-        following = likelihood.at(theta)
-        if following.loglik > point.loglik:
+        theta[0] = max(theta[0], _SHRINK * point.theta[0])
+        following = _try(likelihood, theta)
+        if following is not None and following.loglik > point.loglik:
             return following
         size *= 0.5
     return None
+
+
+def _try(likelihood: Likelihood, theta: Array) -> Point | None:
+    try:
+        return likelihood.at(theta)
+    except np.linalg.LinAlgError:
+        return None
