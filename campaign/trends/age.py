@@ -20,6 +20,7 @@ from campaign.statistics.two_stage import Slopes, specimen_slopes
 from campaign.trends.between import NoContrast
 from campaign.trends.conditions import DAY_s, electrodes
 from campaign.trends.findings import Contrast, Finding
+from campaign.trends.heterogeneity import Split, between_groups
 from campaign.trends.response import unit
 from campaign.trends.results import (
     AgeEstimate,
@@ -109,14 +110,34 @@ def _finding(
         )
     if len(slopes.slope) == 1:
         warnings.append("one specimen: no interval between specimens")
+    split = _by_series(s, slopes, oldest, criteria)
+    apart = None
+    if split is not None and split.p < criteria.heterogeneity_p:
+        warnings.append(f"drifts differ between electrolytes: {split.text}")
+        apart = f"strata differ, {split.text}" if split.apart else None
     plain = Finding(
         "age", s.response, len(slopes.slope), len(s),
         contrasts=(Contrast(f"{oldest:.3g} d", "new", drift),),
         contrast_margin=math.log(criteria.ratio_margin), n_levels=2, warnings=tuple(warnings),
+        open_because=apart,
     )  # fmt: skip
     if oldest >= LEAST_SPAN_d or plain.decision(criteria.error_probability) == "responds":
         return plain
     return replace(plain, open_because=TOO_YOUNG)
+
+
+def _by_series(s: Sample, slopes: Slopes, oldest: float, criteria: Criteria) -> Split | None:
+    """Test whether the drift over the greatest age is the same in every electrolyte."""
+    first = np.unique(s.c.specimen, return_index=True)[1][slopes.specimen]
+    columns = ("salt", "solvents", "additives")
+    group = code(*(getattr(s.c, column)[first] for column in columns))
+    at = first[np.unique(group, return_index=True)[1]]
+    names = [
+        " / ".join(s.c.name(column, int(getattr(s.c, column)[row])) for column in columns)
+        for row in at
+    ]
+    margin = math.log(criteria.ratio_margin)
+    return between_groups(slopes.slope * oldest, group, margin, names, "factor {:.2f}", ratio_of)
 
 
 def spans_enough(s: Sample) -> bool:

@@ -58,11 +58,14 @@ def estimate(
     porous: bool = True,
     scale: str | None = None,
     activity: bool = False,
+    age_adjusted: bool = False,
 ) -> AxisResult:
     """Return the reaction order of every series of the campaign.
 
     porous, scale: see `sample.draw` and `conditions.condition`. activity: the order in the
     activity, where mean activity coefficients are tabulated for the electrolytes.
+    age_adjusted: give the order with the age held beside every order, not only where
+    something is confounded.
     Raises Refused for an unknown response.
     """
     found: list[OrderEstimate] = []
@@ -72,7 +75,7 @@ def estimate(
         left += whole.left_out
         for held, part in series(replace(whole, left_out=())):
             try:
-                fitted = attempt(part, lambda s: order(s, criteria, (), activity))
+                fitted = attempt(part, lambda s: order(s, criteria, (), activity, age_adjusted))
                 found.append(_record(fitted, held, criteria, activity))
             except NoContrast as reason:
                 where = {name: held[name] for name in ("salt", "solvents", "additives")}
@@ -81,7 +84,11 @@ def estimate(
 
 
 def order(
-    s: Sample, criteria: Criteria, held: Sequence[str] = SERIES, activity: bool = False
+    s: Sample,
+    criteria: Criteria,
+    held: Sequence[str] = SERIES,
+    activity: bool = False,
+    age_adjusted: bool = False,
 ) -> OrderFit:
     """Fit the common order within strata of temperature, state and the `held` columns.
 
@@ -103,7 +110,11 @@ def order(
     group = combine(*(getattr(s.c, name) for name in held)) if held else np.zeros_like(level)
     fitted = between.fit(s, x[:, None], stratum)
     parts = _Parts(x, level, concentrations, stratum, group, tuple(held))
-    return _judge(s, fitted, parts, criteria)
+    result = _judge(s, fitted, parts, criteria)
+    if result.adjusted is None and age_adjusted:
+        held_too = confounding.requested(s)
+        return replace(result, adjusted=_adjusted(s, parts, held_too[0]) if held_too else None)
+    return result
 
 
 @dataclass(frozen=True)

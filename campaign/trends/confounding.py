@@ -78,6 +78,14 @@ def between_cells(
     return (*found, batch) if batch else tuple(found)
 
 
+def requested(s: Sample) -> tuple[Confounder, ...]:
+    """Return the age as a column to hold, whether it runs along with the axis or not."""
+    column = times(s)["age"]
+    if not np.isfinite(column).all() or float(np.ptp(column)) <= 0:
+        return ()
+    return (Confounder("age", math.nan, column - column.mean()),)
+
+
 def within_cells(
     s: Sample, x: FloatArray, inside: IntArray, criteria: Criteria
 ) -> tuple[Confounder, ...]:

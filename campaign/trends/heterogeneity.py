@@ -18,7 +18,7 @@ from campaign.trends import between, levels
 from campaign.trends.between import NoContrast
 from campaign.trends.findings import Contrast
 from campaign.trends.sample import Sample
-from campaign.trends.strata import centred, combine
+from campaign.trends.strata import centred, combine, means
 
 Named = Callable[[int], str]
 
@@ -203,6 +203,24 @@ def _changed(
         for effect, end in zip(at, ends, strict=True)
     )
     return Split(p, apart, f"{said} (p = {p:.2g})")
+
+
+def between_groups(
+    values: FloatArray, group: IntArray, margin: float, names: Sequence[str], text: str,
+    shown: Callable[[float], float] = float,
+) -> Split | None:  # fmt: skip
+    """Test whether one value a specimen has the same mean in every group (one-way F)."""
+    from scipy.special import fdtrc
+
+    k = int(group.max()) + 1
+    df = len(values) - k
+    if k < 2 or df < 1:
+        return None
+    average = means(values, group)
+    inside = float(((values - average[group]) ** 2).sum()) / df
+    across = float(((average[group] - values.mean()) ** 2).sum()) / (k - 1)
+    p = float(fdtrc(k - 1, df, across / inside)) if inside > 0 else math.nan
+    return _split(p, average.tolist(), margin, list(names), text, shown)
 
 
 def lack_of_fit(

@@ -56,16 +56,20 @@ class Law:
 
 @dataclass(frozen=True)
 class _Curves:
-    """Readings centred within specimen, cell and temperature; x [V], T [K], charge z."""
+    """Readings centred within specimen, cell and temperature; x [V], charge z.
+
+    pairs (2, k): the distinct potentials and temperatures; where [n] indexes them.
+    """
 
     y: FloatArray
     x: FloatArray
     raw_V: FloatArray
-    T: FloatArray
     block: IntArray
     specimen: IntArray
     charge: int
     n_specimens: int
+    pairs: FloatArray
+    where: IntArray
 
     def fit(self, y: FloatArray, columns: list[FloatArray], method: str) -> MixedFit:
         X = np.stack([np.ones_like(y), *columns], axis=1)
@@ -76,19 +80,37 @@ class _Curves:
 
     def shape(self, E0_V: float, log_g: float) -> FloatArray:
         """Return the centred valley -1/2 ln(4 theta(1 - theta)), g = exp(log_g) - 4."""
-        pairs, where = np.unique(np.stack([self.raw_V, self.T]), axis=1, return_inverse=True)
-        g = math.exp(log_g) - 4.0
-        curve = np.log(valley_resistance(pairs[0], E0_V, g, 1.0, pairs[1], self.charge))
-        return centred(curve[where.reshape(-1)], self.block)
+        curve = np.log(
+            valley_resistance(
+                self.pairs[0], E0_V, math.exp(log_g) - 4.0, 1.0, self.pairs[1], self.charge
+            )
+        )
+        return centred(curve[self.where], self.block)
+
+    def misfits(self, E0_V: FloatArray, g: float) -> FloatArray:
+        """Return the sum of squares left by the valley at each E0_V (k,) and one g."""
+        shifted = self.pairs[0][:, None] - E0_V[None, :]
+        curve = np.log(valley_resistance(shifted, 0.0, g, 1.0, self.pairs[1][:, None], self.charge))
+        return np.array(
+            [
+                float(((self.y - centred(column[self.where], self.block)) ** 2).sum())
+                for column in curve.T
+            ]
+        )
+
+
+def _curves(s: Sample) -> _Curves:
+    block = combine(s.c.specimen, s.c.cell, s.c.temperature)
+    pairs, where = np.unique(np.stack([s.c.x_V, s.c.temperature_K]), axis=1, return_inverse=True)
+    return _Curves(
+        centred(s.y, block), centred(s.c.x_V, block), s.c.x_V, block, combine(s.c.specimen),
+        max(1, abs(s.c.facts.charge)), s.n_specimens, pairs, where.reshape(-1).astype(np.int64),
+    )  # fmt: skip
 
 
 def choose(s: Sample, alpha: float) -> Law:
     """Return the law of the readings of one series on one reference scale."""
-    block = combine(s.c.specimen, s.c.cell, s.c.temperature)
-    curves = _Curves(
-        centred(s.y, block), centred(s.c.x_V, block), s.c.x_V, s.c.temperature_K, block,
-        combine(s.c.specimen), max(1, abs(s.c.facts.charge)), s.n_specimens,
-    )  # fmt: skip
+    curves = _curves(s)
     n_levels = len(np.unique(s.c.fixed))
     try:
         flat = curves.fit(curves.y, [], "ML")
@@ -152,16 +174,13 @@ def _valley(curves: _Curves) -> _Valley | None:
 
 
 def _start(curves: _Curves) -> tuple[float, float]:
+    """Return the best (E0, ln(g + 4)) of a coarse grid."""
     low, high = float(curves.raw_V.min()), float(curves.raw_V.max())
     width = high - low
-    best, least = (0.5 * (low + high), math.log(4.0)), math.inf
-    for E0 in np.linspace(low - 0.2 * width, high + 0.2 * width, 15):
-        for g in _INTERACTIONS:
-            rest = curves.y - curves.shape(float(E0), math.log(g + 4.0))
-            size = float(rest @ rest)
-            if size < least:
-                best, least = (float(E0), math.log(g + 4.0)), size
-    return best
+    grid = np.linspace(low - 0.2 * width, high + 0.2 * width, 15)
+    found = [(curves.misfits(grid, g), g) for g in _INTERACTIONS]
+    best, g = min(found, key=lambda pair: float(pair[0].min()))
+    return float(grid[int(best.argmin())]), math.log(g + 4.0)
 
 
 def _linearised(curves: _Curves, at: tuple[float, float]) -> tuple[FloatArray, FloatArray]:

@@ -82,11 +82,15 @@ def finding(s: Sample, criteria: Criteria) -> tuple[Sample, Finding, spans.Span]
         raise NoContrast(f"no readings with {s.response} and a potential outside a plateau")
     s, span = spans.span(s, criteria)
     warnings = [*s.warnings, *span.warnings]
+    split = [one for one in span.splits if one.p < criteria.heterogeneity_p]
+    warnings += [f"spans differ between electrolytes: {one.text}" for one in split]
+    apart = next((one for one in split if one.apart), None)
     if s.n_specimens == 1:
         warnings.append("one specimen: no interval between specimens")
     plain = Finding(
         "potential", s.response, span.n_specimens, len(s), contrasts=span.contrasts,
         contrast_margin=math.log(criteria.ratio_margin), family="tukey", n_levels=span.n_levels,
+        open_because=f"strata differ, {apart.text}" if apart else None,
         confounded=bool(span.confounders), warnings=tuple(warnings),
     )  # fmt: skip
     if span.window_V >= criteria.potential_window_V - 1e-9:

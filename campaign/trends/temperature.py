@@ -14,13 +14,14 @@ import numpy as np
 from campaign.ledger.criteria import Criteria
 from campaign.ledger.readings import Snapshot
 from campaign.statistics.random_effects import Combined, combine
-from campaign.trends import confounding, strata
+from campaign.trends import confounding, heterogeneity, strata
 from campaign.trends.barriers import Barriers, barriers, usable
 from campaign.trends.between import NoContrast
 from campaign.trends.conditions import electrodes
 from campaign.trends.pairs import (
     BARRIER_BY_ADDITIVE,
     BARRIER_BY_SOLVENT,
+    SAME_CONCENTRATION,
     Comparison,
     PairsFit,
     compare,
@@ -100,6 +101,9 @@ def _record(s: Sample, held: dict[str, str], criteria: Criteria) -> BarrierEstim
     warnings = [*s.warnings, *(one.warning("temperature") for one in within)]
     if s.n_specimens == 1:
         warnings.append("one specimen: no interval between specimens")
+    split = _by_concentration(found, criteria)
+    if split is not None and split.p < criteria.heterogeneity_p:
+        warnings.append(f"barriers differ with concentration: {split.text}")
     reason = s.open_because or s.pore_open
     return BarrierEstimate(
         **described(s, held),
@@ -114,6 +118,15 @@ def _record(s: Sample, held: dict[str, str], criteria: Criteria) -> BarrierEstim
         warnings=tuple(warnings),
         adjusted=_adjusted(found, within[0], alpha) if within else None,
     )
+
+
+def _by_concentration(found: Barriers, criteria: Criteria) -> heterogeneity.Split | None:
+    """Test whether specimens at different concentrations have different barriers."""
+    rows = found.by_specimen
+    level = strata.combine(strata.match(np.log(rows.c.concentration), SAME_CONCENTRATION).codes)
+    names = [f"{rows.c.concentration[level == i][0]:.4g}" for i in range(int(level.max()) + 1)]
+    margin = criteria.barrier_margin_kJ_mol
+    return heterogeneity.between_groups(rows.y, level, margin, names, "{:.1f} kJ/mol")
 
 
 def _combined(found: Barriers) -> Combined:

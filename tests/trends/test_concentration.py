@@ -266,3 +266,14 @@ def test_unscalable_pores_leave_the_order_open_and_can_be_switched_off(rng):
     assert e.decision == "open: pore resistance not scalable"
     plain = concentration.estimate(campaign, Criteria(), porous=False).estimates[0]
     assert plain.decision == "responds"
+
+
+def test_the_age_is_held_on_request(rng):
+    rows = simulate(rng, cells=4)
+    days = {row["cell"]: float(rng.uniform(0, 90)) for row in rows}
+    for row in rows:
+        row["measured_at"] += 86400 * days[row["cell"]]
+        row["R_ct"] *= math.exp(0.005 * days[row["cell"]])
+    assert orders(rows).estimates[0].adjusted is None
+    adjusted = orders(rows, age_adjusted=True).estimates[0].adjusted
+    assert adjusted.for_what == "age" and adjusted.ci[0] < 0.5 < adjusted.ci[1]

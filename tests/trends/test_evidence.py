@@ -151,3 +151,28 @@ def test_a_large_campaign_is_answered(rng):
     findings = found(rows)
     assert findings["concentration"].n_measurements == 12_000
     assert findings["concentration"].decision() == "responds"
+
+
+def test_spans_on_both_sides_of_the_margin_leave_the_potential_open_and_name_the_split(rng):
+    held = {"potentials": (2.8, 3.0, 3.2), "temperatures": (298.15,)}
+    rows = simulate(rng, solvents={"PC": 1.0}, **held)
+    rows += [
+        {**row, "cell": "d" + row["cell"]}
+        for row in simulate(rng, solvents={"DMC": 1.0}, potential_law=lambda E: 4 * E, **held)
+    ]
+    finding = found(rows)["potential"]
+    assert finding.decision() == "open"
+    assert "DMC" in finding.open_because and "PC" in finding.open_because
+
+
+def test_drift_in_one_electrolyte_only_is_named(rng):
+    def weekly(rng, count, k):
+        return 86400.0 * (1 + 7 * k + 0.05 * count)
+
+    rows = simulate(rng, solvents={"PC": 1.0}, ages=weekly, repeats=4)
+    rows += [
+        {**row, "cell": "d" + row["cell"]}
+        for row in simulate(rng, solvents={"DMC": 1.0}, ages=weekly, repeats=4, drift_per_day=0.05)
+    ]
+    finding = found(rows)["age"]
+    assert finding.decision() == "open" and "DMC" in finding.open_because

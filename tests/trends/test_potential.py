@@ -125,3 +125,11 @@ def test_no_potential_and_a_single_one_are_reasons(rng):
         row["potential_V"] = np.nan
     assert "no readings" in spans(rows).left_out[0].reason
     assert "two potentials" in spans(simulate(rng)).left_out[0].reason
+
+
+def test_a_potential_seen_in_one_specimen_only_is_named_and_not_compared(rng):
+    rows = campaign(rng, lambda E: 0 * E)
+    rows += [{**row, "potential_V": 3.5} for row in rows if row["cell"] == "cell 1"][:3]
+    e = spans(rows).estimates[0]
+    assert e.decision == "unresponsive" and max(e.levels) == pytest.approx(3.2)
+    assert any("one specimen only" in text and "3.5 V" in text for text in e.warnings)

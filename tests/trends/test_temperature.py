@@ -6,7 +6,7 @@ import math
 
 import numpy as np
 import pytest
-from simulated_campaign import GAS, START, simulate, snapshot, with_facts
+from simulated_campaign import FARADAY, GAS, START, simulate, snapshot, with_facts
 
 from campaign.kinetics.porous import apparent_resistance
 from campaign.ledger.criteria import Criteria
@@ -132,3 +132,40 @@ def test_missing_assembly_times_do_no_harm(rng):
         row["assembled_at"] = np.nan
         row["measured_at"] = START
     assert barriers(rows).estimates[0].Ea_ci is not None
+
+
+def test_a_half_filling_potential_that_moves_shifts_the_barrier_and_the_content_removes_it(rng):
+    """One potential is another ion content at every temperature; R_ct(E) is the cosh valley.
+
+    At equal content the valley is the same at all temperatures and the barrier is the truth.
+    At one potential against a fixed reference, 0.15 V from half-filling, it adds
+    F 0.15 V / 2 = 7.2 kJ/mol on the flank (by differentiating ln cosh(F(E - E0)/2RT)).
+    """
+    c, E0 = 0.1, 0.20
+
+    def campaign(follow):
+        rows = simulate(rng, concentrations=(c,), cells=6, barrier=45.0, reference="Ag/AgCl")
+        for row in rows:
+            T = row["temperature_K"]
+            half = E0 + GAS * T / FARADAY * math.log(c)
+            E = half + 0.15 * T / 298.15 if follow else E0 + 0.15
+            valley = math.log(math.cosh(FARADAY * (E - half) / (2 * GAS * T)))
+            row["potential_V"] = E
+            row["R_ct"] *= math.exp(valley)
+            if follow:
+                row["ion_content"] = 0.1
+        return rows
+
+    wrong = barriers(campaign(False)).estimates[0]
+    assert wrong.Ea_kJ_mol - 45.0 == pytest.approx(FARADAY * 0.15 / 2000, abs=1.5)
+    assert wrong.decision == "open: potential not comparable"
+    right = barriers(campaign(True)).estimates[0]
+    assert right.Ea_ci[0] < 45.0 < right.Ea_ci[1] and right.decision is None
+
+
+def test_barriers_that_change_with_concentration_are_warned(rng):
+    rows = simulate(rng, concentrations=(0.1, 1.0), cells=5)
+    for row in rows:
+        if row["concentration"] == 0.1:
+            row["R_ct"] *= math.exp(10e3 / GAS * (1 / row["temperature_K"] - 1 / 298.15))
+    assert any("barriers differ with" in text for text in barriers(rows).estimates[0].warnings)
