@@ -128,9 +128,9 @@ def reduced(s: Sample, stratum: IntArray) -> Reduced:
     variance = float(rest @ rest) / free if free > 0 else 0.0
     first = np.unique(cell, return_index=True)[1]
     rows = replace(s.take(first), y=effect, known=variance / per_cell)
-    return Reduced(
-        rows, combine(component[first]), cell, first, math.sqrt(variance) if free > 0 else math.nan
-    )
+    # as in the mixed model: the scatter of readings beyond their known variance
+    beyond = math.sqrt(max(variance - float(s.known.mean()), 0.0)) if free > 0 else math.nan
+    return Reduced(rows, combine(component[first]), cell, first, beyond)
 
 
 def _linked(cell: IntArray, stratum: IntArray) -> IntArray:

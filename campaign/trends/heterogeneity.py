@@ -13,7 +13,6 @@ from dataclasses import dataclass
 import numpy as np
 
 from campaign.ledger.readings import FloatArray, IntArray
-from campaign.statistics.estimate import Estimate
 from campaign.trends import between, levels
 from campaign.trends.between import NoContrast
 from campaign.trends.findings import Contrast
@@ -54,14 +53,16 @@ def wald(estimates: FloatArray, cov: FloatArray, df: float) -> float:
     return float(fdtrc(rank, df, max(statistic, 0.0)))
 
 
-def _equal(fit: between.BetweenFit, rows: FloatArray) -> tuple[float, list[Estimate]]:
+def _equal(fit: between.BetweenFit, rows: FloatArray) -> tuple[float, list[float]]:
     """Return p of the contrasts `rows` (k, p) being equal, and the k estimates."""
-    differences = rows[1:] - rows[0]
-    single = [fit.contrast(row) for row in rows]
-    apart, cov = fit.mixed.contrasts(differences)
-    df = min((e.df for e in apart if math.isfinite(e.se)), default=0.0)
-    values = np.array([e.value for e in apart])
-    return wald(values, cov, df), single
+    mixed = fit.mixed
+    values = rows @ mixed.beta
+    apart = rows[1:] - rows[0]
+    ends = [mixed.contrast(row) for row in (apart[0], apart[-1])]
+    if not all(math.isfinite(e.se) for e in ends):
+        return math.nan, values.tolist()
+    df = min(e.df for e in ends)
+    return wald(apart @ mixed.beta, apart @ mixed.cov @ apart.T, df), values.tolist()
 
 
 def order_by_group(
@@ -82,9 +83,7 @@ def order_by_group(
         p, slopes = _equal(fit, -np.eye(len(groups)))
     except NoContrast:
         return None
-    return _split(
-        p, [e.value for e in slopes], margin, [name(int(g)) for g in groups], "order {:.2f}"
-    )
+    return _split(p, slopes, margin, [name(int(g)) for g in groups], "order {:.2f}")
 
 
 def differences_by_group(
@@ -113,7 +112,7 @@ def differences_by_group(
             continue
         p, values = _equal(fitted.fit, np.array([row for _, row in found]))
         split = _split(
-            min(1.0, p * len(pairs)), [e.value for e in values], margin,
+            min(1.0, p * len(pairs)), values, margin,
             [name(g) for g, _ in found], text(b, a), shown,
         )  # fmt: skip
         if split and (worst is None or split.p < worst.p):
@@ -232,9 +231,10 @@ def lack_of_fit(
     group = fitted.groups[0]
     base = group[0]
     rows = np.array([fitted.row(one, base) for one in group[1:]])
-    estimates, cov = fitted.fit.mixed.contrasts(rows)
+    mixed = fitted.fit.mixed
+    cov = rows @ mixed.cov @ rows.T
     x = values[list(group[1:])] - values[base]
     # directions orthogonal to the line through the base level
     rest = np.linalg.svd(x[:, None])[0][:, 1:].T
     df = min((c.estimate.df for c in contrasts if math.isfinite(c.estimate.se)), default=0.0)
-    return wald(rest @ np.array([e.value for e in estimates]), rest @ cov @ rest.T, df)
+    return wald(rest @ rows @ mixed.beta, rest @ cov @ rest.T, df)

@@ -33,6 +33,7 @@ LEAST_DIFFERENCE = 2.0
 
 VARIANCES = 2
 _INTERACTIONS = (-3.0, -1.0, 0.0, 2.0, 5.0, 12.0)
+_PLAIN_STEPS, _MIXED_STEPS = 12, 6
 _LARGEST_LOG = math.log(104.0)
 
 
@@ -157,17 +158,24 @@ def _chosen(
 
 
 def _valley(curves: _Curves) -> _Valley | None:
-    """Fit E0 and g by Gauss-Newton steps of the mixed model, from the best grid point."""
+    """Fit E0 and ln(g + 4) by Gauss-Newton steps from the best grid point.
+
+    The first steps are of plain least squares, the last ones of the mixed model.
+    """
     at = _start(curves)
-    for _ in range(40):
+    for turn in range(_PLAIN_STEPS + _MIXED_STEPS):
         shape, jacobian = _linearised(curves, at)
         try:
-            step = curves.fit(curves.y - shape, list(jacobian.T), "REML").beta[1:]
+            step = (
+                np.linalg.lstsq(jacobian, curves.y - shape, rcond=None)[0]
+                if turn < _PLAIN_STEPS
+                else curves.fit(curves.y - shape, list(jacobian.T), "REML").beta[1:]
+            )
         except NoContrast:
             return None
         move = np.clip(step, [-0.05, -0.7], [0.05, 0.7])
         at = (at[0] + float(move[0]), min(max(at[1] + float(move[1]), -3.0), _LARGEST_LOG))
-        if abs(step[0]) < 1e-5 and abs(step[1]) < 1e-4:
+        if turn >= _PLAIN_STEPS and abs(step[0]) < 1e-5 and abs(step[1]) < 1e-4:
             break
     fitted = curves.fit(curves.y - curves.shape(*at), [], "ML")
     return _Valley(at[0], at[1], float(fitted.loglik))

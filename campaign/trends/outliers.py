@@ -13,17 +13,20 @@ BOUND = 3.5
 
 
 def outliers(s: Sample, fitted: BetweenFit, bound: float = BOUND) -> tuple[Outlier, ...]:
-    """Return specimens and readings whose studentised residual exceeds `bound`."""
-    if fitted.by_cell:
-        return ()
+    """Return specimens and readings whose studentised residual exceeds `bound`.
+
+    Readings only where the fit was of single readings and not of one effect a cell.
+    """
     names = s.c.names["specimen"]
     codes = np.unique(s.c.specimen)
     by_specimen = fitted.mixed.studentised_specimens()
-    by_reading = fitted.mixed.studentised_readings()
     shown = [
         Outlier("specimen", names[int(codes[i])], None, float(by_specimen[i]))
         for i in np.flatnonzero(np.abs(by_specimen) > bound)
     ]
+    if fitted.by_cell:
+        return tuple(shown)
+    by_reading = fitted.mixed.studentised_readings()
     shown += [
         Outlier(
             "reading", names[int(s.c.specimen[i])], int(s.c.measurement[i]), float(by_reading[i])
