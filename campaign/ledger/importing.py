@@ -13,6 +13,7 @@ from typing import TYPE_CHECKING, Any
 from campaign.errors import Fault, Refused
 from campaign.ledger import schema
 from campaign.ledger.book import Book
+from campaign.ledger.flat.rows import settle_area
 from campaign.ledger.instants import format_utc
 from campaign.ledger.journal import Entry, Pen, writing
 from campaign.ledger.quantities import QUANTITIES
@@ -97,6 +98,7 @@ def import_tables(
         book = Book.read(pen)
         faults = [fault for table in tables for fault in table.faults]
         entering = _Entering(pen, book, choices, outcome)
+        faults += entering.settle_areas([row for table in tables for row in table.rows])
         entering.load([row for table in tables for row in table.rows])
         for table in tables:
             outcome.warnings += [w for w in table.warnings if w not in outcome.warnings]
@@ -115,9 +117,10 @@ def log_row(
     with writing(database, who=who, dry_run=choices.dry_run) as pen:
         book = Book.read(pen)
         entering = _Entering(pen, book, choices, outcome)
+        faults = entering.settle_areas([row])
         entering.load([row])
         entry = pen.entry("log", f"measurement of cell {row.values.get('cell', '?')}")
-        faults = entering.enter_rows(entry, [row])
+        faults += entering.enter_rows(entry, [row])
         if faults:
             raise Refused(faults)
     return outcome
@@ -138,6 +141,27 @@ class _Entering:
         self.outcome = outcome
         self.stored: dict[tuple[str, str], Stored] = {}
         self.taken: dict[tuple[str, str], FlatRow] = {}
+
+    def settle_areas(self, rows: Sequence[FlatRow]) -> list[Fault]:
+        """Turn values per area into values as fitted where the ledger knows the cell's area."""
+        faults = []
+        for row in rows:
+            if not row.per_area:
+                continue
+            cell = self.book.cells.get(row.values.get("cell", ""))
+            if cell is not None:
+                settle_area(row, cell["area_cm2"])
+                continue
+            faults.append(
+                _fault(
+                    row,
+                    row.per_area[0],
+                    f"{row.per_area[0]} is per area, and the area of cell "
+                    f"{row.values.get('cell', '?')} is not stated",
+                    "the column area_cm2 in a row of this cell",
+                )
+            )
+        return faults
 
     def load(self, rows: Sequence[FlatRow]) -> None:
         """Read what is stored at the places the rows name."""
@@ -224,6 +248,16 @@ class _Entering:
             return self._refit(entry, row, stored, resolver)
         if stored is not None and not (self.choices.refit or self.choices.restore):
             return [_withdrawn(row)]
+        if row.values.get("potential_V") is None and cell["configuration"] != "symmetric":
+            return [
+                _fault(
+                    row,
+                    "potential_V",
+                    f"potential_V is empty; only a symmetric cell may leave it so, and cell "
+                    f"{place[0]} is {cell['configuration']}",
+                    "a potential against the cell's reference",
+                )
+            ]
         self._new(entry, row, cell)
         return []
 

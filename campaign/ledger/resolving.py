@@ -139,7 +139,7 @@ class Resolver:
                 row,
                 "electrolyte",
                 f"the recipe '{text}' cannot be read: {error}",
-                error.expected or "a recipe such as 1 M NaPF6 in EC:DMC (1:1 v/v) + 2 wt% FEC",
+                error.expected or "a recipe such as 1 M NaPF6 in EC:DMC (1:1 v/v)",
             )
             return None
         for warning in recipe.warnings:
