@@ -34,8 +34,9 @@ class Point:
 
     loglik; beta (f,) and cov (f, f) of all fixed effects (X, then strata);
     score (1 + q,) and information (1 + q, 1 + q), expected;
-    spread (f, f) = F' V^-2 F; rz (m, q, f) = Z' V^-1 F; zpy (m, q) = Z' P y;
-    zvz (m, q, q) = Z' V^-1 Z; inner (m, q, q) = the T of V^-1 = D^-1 - D^-1 Z T Z' D^-1;
+    spread (f, f) = F' V^-2 F; third (f, f) = F' V^-3 F; rz (m, q, f) = Z' V^-1 F;
+    rz2 (m, q, f) = Z' V^-2 F; zpy (m, q) = Z' P y; zvz (m, q, q) = Z' V^-1 Z;
+    inner (m, q, q) = the T of V^-1 = D^-1 - D^-1 Z T Z' D^-1;
     first: the sums with weights D^-1.
     """
 
@@ -46,7 +47,9 @@ class Point:
     score: Array
     information: Array
     spread: Array
+    third: Array
     rz: Array
+    rz2: Array
     zpy: Array
     zvz: Array
     inner: Array
@@ -99,14 +102,19 @@ class Likelihood:
         if self.reml:
             value += logdet_f - f * math.log(2 * math.pi)
         zvz = one.zz - one.zz @ inner @ one.zz
-        pieces = _Pieces(inner, tr[..., :f], rz_all[..., :f], zvz, spread_all[:f, :f], cov)
-        traces, information = pieces.moments(one, two, three, self.reml)
+        left = np.eye(q) - one.zz @ inner
+        zb = two.ze[..., :f] - two.zz @ tr[..., :f]
+        pieces = _Pieces(
+            inner, rz_all[..., :f], left @ zb, zvz, spread_all[:f, :f],
+            _third(three, inner, tr[..., :f], zb), cov,
+        )  # fmt: skip
+        traces, information = pieces.moments(one, two, three, left, self.reml)
         squares = np.empty(1 + q)
         squares[0] = residual @ spread_all @ residual
         squares[1:] = (zpy**2).sum(axis=0)
         return Point(
             theta, -0.5 * value, beta, cov, 0.5 * (squares - traces), information,
-            pieces.spread, pieces.rz, zpy, zvz, inner, one,
+            pieces.spread, pieces.third, pieces.rz, pieces.rz2, zpy, zvz, inner, one,
         )  # fmt: skip
 
 
@@ -136,63 +144,63 @@ def _second(one: Grams, two: Grams, inner: Array, tr: Array) -> Array:
     return two.ee - cross - cross.T + t.T @ (two.zz @ tr).reshape(flat, -1)
 
 
+def _third(three: Grams, inner: Array, tr: Array, zb: Array) -> Array:
+    """Return F' V^-3 F; zb (m, q, f) = Z' D^-1 V^-1 F."""
+    f = tr.shape[2]
+    t, b = tr.reshape(-1, f), zb.reshape(-1, f)
+    cross = t.T @ three.ze[..., :f].reshape(-1, f)
+    whole = three.ee[:f, :f] - cross - cross.T + t.T @ (three.zz @ tr).reshape(-1, f)
+    third: Array = whole - b.T @ (inner @ zb).reshape(-1, f)
+    return third
+
+
 @dataclass(frozen=True)
 class _Pieces:
-    """Blocks shared by the traces; names as in `Point` (tr = T Z' D^-1 F)."""
+    """Blocks shared by the traces; names as in `Point`."""
 
     inner: Array
-    tr: Array
     rz: Array
+    rz2: Array
     zvz: Array
     spread: Array
+    third: Array
     cov: Array
 
-    def moments(self, one: Grams, two: Grams, three: Grams, reml: bool) -> tuple[Array, Array]:
-        """Return tr(P V_k), (1 + q,), and 1/2 tr(P V_k P V_l)."""
+    def moments(
+        self, one: Grams, two: Grams, three: Grams, left: Array, reml: bool
+    ) -> tuple[Array, Array]:
+        """Return tr(P V_k), (1 + q,), and 1/2 tr(P V_k P V_l); left = 1 - A T."""
         q = self.zvz.shape[1]
-        f = self.cov.shape[0]
         traces = np.empty(1 + q)
         info = np.empty((1 + q, 1 + q))
         across = two.zz @ self.inner
-        trace = one.total - float(np.einsum("iab,iba->", two.zz, self.inner))
+        traces[0] = one.total - float(np.einsum("iab,iba->", two.zz, self.inner))
+        traces[1:] = np.einsum("ikk->k", self.zvz)
         info[0, 0] = (
             two.total
             - 2 * float(np.einsum("iab,iba->", three.zz, self.inner))
             + float(np.einsum("iab,iba->", across, across))
         )
-        # (1 - A T) Z' D^-1 (..): what is left of the second-order sums after absorbing u
-        left = np.eye(q) - one.zz @ self.inner
-        zb = two.ze[..., :f] - two.zz @ self.tr
-        zv2f = left @ zb
-        zv2z = left @ two.zz @ left.transpose(0, 2, 1)
-        traces[1:] = np.einsum("ikk->k", self.zvz)
-        info[0, 1:] = np.einsum("ikk->k", zv2z)
+        info[0, 1:] = np.einsum("ikk->k", left @ two.zz @ left.transpose(0, 2, 1))
         info[1:, 1:] = (self.zvz**2).sum(axis=0)
         if reml:
-            self._subtract(traces, info, three, zb, zv2f)
-            trace -= float((self.cov * self.spread).sum())
-        traces[0] = trace
+            self._subtract(traces, info)
         info[1:, 0] = info[0, 1:]
         return traces, 0.5 * info
 
-    def _subtract(self, traces: Array, info: Array, three: Grams, zb: Array, zv2f: Array) -> None:
+    def _subtract(self, traces: Array, info: Array) -> None:
         """Take the fixed effects out of the traces: V^-1 becomes P."""
-        q = self.zvz.shape[1]
-        f = self.cov.shape[0]
-        flat = zb.shape[0] * q
-        t = self.tr.reshape(flat, f)
-        cross = t.T @ three.ze[..., :f].reshape(flat, f)
-        third = three.ee[:f, :f] - cross - cross.T + t.T @ (three.zz @ self.tr).reshape(flat, f)
-        third -= zb.reshape(flat, f).T @ (self.inner @ zb).reshape(flat, f)
         cs = self.cov @ self.spread
-        info[0, 0] += float((cs * cs.T).sum()) - 2 * float((self.cov * third).sum())
+        traces[0] -= float(cs.trace())
+        info[0, 0] += float((cs * cs.T).sum()) - 2 * float((self.cov * self.third).sum())
         cg = []
-        for k in range(q):
+        for k in range(self.zvz.shape[1]):
             rk = self.rz[:, k, :]
             ck = rk @ self.cov
             cg.append(self.cov @ (rk.T @ rk))
             traces[1 + k] -= float((ck * rk).sum())
-            info[0, 1 + k] += float((cs * cg[k].T).sum()) - 2 * float((zv2f[:, k, :] * ck).sum())
+            info[0, 1 + k] += float((cs * cg[k].T).sum())
+            info[0, 1 + k] -= 2 * float((self.rz2[:, k, :] * ck).sum())
             for j in range(k + 1):
                 shared = (ck * self.rz[:, j, :]).sum(axis=1)
                 change = float((cg[k] * cg[j].T).sum()) - 2 * float(self.zvz[:, k, j] @ shared)

@@ -20,6 +20,7 @@ from campaign.statistics.design import NoContrast
 from campaign.statistics.estimate import Estimate
 from campaign.statistics.mixed import MixedFit, fit_mixed
 from campaign.statistics.sums import Array
+from campaign.statistics.two_stage import specimen_slopes
 
 
 @dataclass(frozen=True)
@@ -112,6 +113,37 @@ def heterogeneity(
     rows = np.hstack([np.ones((k - 1, 1)), -np.eye(k - 1)])
     slopes = tuple(fit.contrast(row) for row in np.eye(k))
     return Heterogeneity(tuple(cells.strata[s] for s in wide), slopes, wald(fit, rows))
+
+
+def heterogeneity_within(
+    y: npt.ArrayLike,
+    x: npt.ArrayLike,
+    specimen: npt.ArrayLike,
+    stratum: npt.ArrayLike,
+    known: npt.ArrayLike | None = None,
+) -> Heterogeneity | None:
+    """Return the same for an axis that is run through within specimens (temperature, age).
+
+    One slope per specimen x stratum; their scatter beyond their own errors is the measure, with
+    the specimen as random effect. None with fewer than two strata that have a contrast.
+    """
+    of_specimen = np.unique(np.asarray(specimen), return_inverse=True)[1]
+    labels, of_stratum = np.unique(np.asarray(stratum), return_inverse=True)
+    try:
+        cells = specimen_slopes(y, x, of_specimen * labels.size + of_stratum, None, known)
+    except NoContrast:
+        return None
+    owner, where = np.divmod(cells.specimen.astype(np.intp), labels.size)
+    present = np.unique(where)
+    if present.size < 2:
+        return None
+    errors = cells.variance if np.isfinite(cells.variance).all() else None
+    columns = (where[:, None] == present).astype(float)
+    fit = fit_mixed(cells.slope, columns, owner, None, errors)
+    k = present.size
+    rows = np.hstack([np.ones((k - 1, 1)), -np.eye(k - 1)])
+    slopes = tuple(fit.contrast(row) for row in np.eye(k))
+    return Heterogeneity(tuple(labels[present].tolist()), slopes, wald(fit, rows))
 
 
 def correlation_within(

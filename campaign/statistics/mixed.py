@@ -15,6 +15,8 @@ the interval of anything that differs between specimens rests on their scatter a
     Satterthwaite, Biometrics Bull. 2 (1946) 110. dv/dtheta_k = a' V_k a, a = V^-1 F C c.
 [3] Henderson, Biometrics 9 (1953) 226, method 3: rank([F Z]) - rank(F) degrees of freedom
     between specimens.
+[4] Kenward & Roger, Biometrics 53 (1997) 983: variance of a contrast with the uncertainty of
+    the weights, v + 2 sum_kl (I^-1)_kl a' V_k P V_l a.
 """
 
 from __future__ import annotations
@@ -87,14 +89,16 @@ class MixedFit:
         """Only one specimen: estimates carry no interval for another specimen."""
         return self.n_specimens == 1
 
-    def contrast(self, c: Sequence[float] | Array) -> Estimate:
+    def contrast(self, c: Sequence[float] | Array, adjusted: bool = False) -> Estimate:
         """Return c' beta with its standard error and degrees of freedom [2].
 
         c: (p,) over the columns of X, or (p + S,) over the columns and the strata. What does
         not vary within specimens has at most the degrees of freedom between specimens [3]:
         with sigma_between estimated as zero, too, more readings do not replace specimens.
-        `se` is NaN and df 0 where no specimen is to spare. Raises ValueError for a vector of
-        another length.
+        `se` is NaN and df 0 where no specimen is to spare. `adjusted` adds to the standard error
+        what estimating the variances adds [4]: nothing in a balanced campaign, worth having
+        where some specimens were moved through several levels and others were not. Raises
+        ValueError for a vector of another length.
         """
         full = self._full(c)
         value = float(full @ self._coefficients)
@@ -102,8 +106,10 @@ class MixedFit:
         cap = self._cap(direction)
         if self.single_specimen or cap <= 0:
             return Estimate(value, math.nan, 0.0)
-        se = math.sqrt(max(float(full @ self._cov @ full), 0.0))
-        return Estimate(value, se, min(self._satterthwaite(direction), cap))
+        variance = max(float(full @ self._cov @ full), 0.0)
+        if adjusted:
+            variance += self._adjustment(direction)
+        return Estimate(value, math.sqrt(variance), min(self._satterthwaite(direction), cap))
 
     def contrasts(self, rows: Sequence[Sequence[float]] | Array) -> tuple[list[Estimate], Array]:
         """Return the estimates of the rows (k, p) or (k, p + S), and their covariance (k, k)."""
@@ -158,6 +164,26 @@ class MixedFit:
         info = point.information[np.ix_(free, free)]
         about = float(slope @ solve(info, slope))
         return 2 * variance**2 / about if about > 0 else math.inf
+
+    def _adjustment(self, direction: Array) -> float:
+        """Return 2 sum_kl (I^-1)_kl a' V_k P V_l a [4], a = V^-1 F C c."""
+        point = self._point
+        carried = point.cov @ direction
+        seen = point.rz @ carried  # Z_k' a, so that V_k a = Z_k seen_k
+        q = seen.shape[1]
+        back = np.einsum("ik,ikf->kf", seen, point.rz)
+        inner = np.empty((1 + q, 1 + q))
+        second = point.spread @ carried
+        inner[0, 0] = carried @ point.third @ carried - second @ point.cov @ second
+        across = np.einsum("ik,ikf,f->k", seen, point.rz2, carried)
+        inner[0, 1:] = inner[1:, 0] = across - back @ point.cov @ second
+        inner[1:, 1:] = np.einsum("ik,ikl,il->kl", seen, point.zvz, seen)
+        inner[1:, 1:] -= back @ point.cov @ back.T
+        free = np.flatnonzero(self._free)
+        info = point.information[np.ix_(free, free)]
+        rows = inner[np.ix_(free, free)]
+        total = sum(float(solve(info, rows[k])[k]) for k in range(free.size))
+        return max(2 * total, 0.0)
 
 
 def fit_mixed(

@@ -1,8 +1,8 @@
 """Fisher scoring for variances that may be exactly zero.
 
-Steps I^-1 s, with the expected information I and the score s, are projected on g_k >= 0: a variance driven below zero is set to zero exactly and
-released again only if the likelihood rises away from zero. Steps are halved until the
-likelihood rises.
+Steps I^-1 s, with the expected information I and the score s, are projected on g_k >= 0: a
+variance driven below zero is set to zero exactly and released again only if the likelihood
+rises away from zero. Steps are halved until the likelihood rises.
 
 [1] Harville, J. Am. Stat. Assoc. 72 (1977) 320 (scoring for variance components);
     Bertsekas, SIAM J. Control Optim. 20 (1982) 221 (projected Newton steps).

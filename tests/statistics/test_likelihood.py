@@ -67,3 +67,32 @@ def test_value_score_and_information_equal_the_dense_ones(reml, slopes, known, s
     np.testing.assert_allclose(point.score, score, rtol=1e-9, atol=1e-9)
     np.testing.assert_allclose(point.information, info, rtol=1e-9, atol=1e-10)
     np.testing.assert_allclose(point.cov, cov, rtol=1e-9, atol=1e-12)
+
+
+@pytest.mark.parametrize("seed", range(6))
+@pytest.mark.parametrize("slopes", [0, 1])
+@pytest.mark.parametrize("known", [True, False])
+def test_no_other_optimiser_climbs_higher(seed, slopes, known):
+    """scipy.optimize.minimize (Nelder-Mead) on the logarithms, from several starts."""
+    from scipy.optimize import minimize
+
+    from campaign.statistics.mixed import fit_mixed
+
+    rng = np.random.default_rng([seed, slopes, known])
+    n, m = 60, 6
+    specimen, stratum = rng.integers(0, m, n), rng.integers(0, 4, n)
+    x = rng.normal(size=n)
+    y = 0.5 * x + rng.normal(0, rng.choice([0, 0.3, 3]), m)[specimen] + rng.normal(0, 0.5, n)
+    variances = rng.uniform(0, 0.5, n) ** 2 if known else None
+    columns = x if slopes else None
+    fit = fit_mixed(y, x, specimen, stratum, variances, columns)
+    design = prepare(y, x, specimen, stratum, variances, columns)
+    likelihood = Likelihood.of(design.data, True)
+    offset = fit.loglik - likelihood.at(fit._point.theta).loglik
+
+    def below(logs):
+        return -likelihood.at(np.exp(np.clip(logs, -18, 8))).loglik - offset
+
+    for start in ([-1.0, -1, -1], [-3, 1, 1], [0, -6, -6]):
+        other = minimize(below, start[: 2 + slopes], method="Nelder-Mead", options={"fatol": 1e-10})
+        assert fit.loglik >= -other.fun - 1e-6

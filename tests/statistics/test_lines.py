@@ -10,7 +10,13 @@ from hypothesis import strategies as st
 
 from campaign.statistics.coverage import exact_interval
 from campaign.statistics.information import aicc
-from campaign.statistics.lines import correlation_within, heterogeneity, lack_of_fit, wald
+from campaign.statistics.lines import (
+    correlation_within,
+    heterogeneity,
+    heterogeneity_within,
+    lack_of_fit,
+    wald,
+)
 from campaign.statistics.mixed import fit_mixed
 
 
@@ -92,6 +98,31 @@ def test_one_stratum_has_nothing_to_compare():
     assert heterogeneity(y, x, specimen, np.zeros(y.size)) is None
     flat = np.where(stratum > 0, 0.0, x)
     assert heterogeneity(y, flat, specimen, stratum) is None
+
+
+def ramps(seed, split=0.0, tau=0.1):
+    rng = np.random.default_rng(seed)
+    specimen, stratum, step = (part.ravel() for part in np.indices((6, 3, 8)))
+    x = np.linspace(3.0, 3.5, 8)[step]
+    slope = 6 + rng.normal(0, 0.3, 6)[specimen] + rng.normal(0, tau, (6, 3))[specimen, stratum]
+    y = (slope + split * (stratum == 2)) * x + rng.normal(0, 0.01, x.size)
+    return y + rng.normal(0, 1, (6, 3))[specimen, stratum], x, specimen, stratum
+
+
+def test_a_split_of_slopes_within_specimens_is_found():
+    found = heterogeneity_within(*ramps(1, split=1.0))
+    assert found.test.p < 1e-3
+    assert found.slopes[2].value - found.slopes[0].value == pytest.approx(1.0, abs=0.3)
+    y, x, specimen, stratum = ramps(1)
+    assert heterogeneity_within(y, x, specimen, np.zeros(y.size)) is None
+    assert heterogeneity_within(y, np.ones(y.size), specimen, stratum) is None
+
+
+@pytest.mark.parametrize("tau", [0.0, 0.1])
+def test_equal_slopes_within_specimens_are_rejected_as_often_as_stated(tau):
+    p = [heterogeneity_within(*ramps(seed, tau=tau)).test.p for seed in range(200)]
+    low, high = exact_interval(int((np.array(p) < 0.05).sum()), len(p), 0.999)
+    assert low < 0.05 < high
 
 
 def test_confounding_with_age():

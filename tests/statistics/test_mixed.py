@@ -256,3 +256,35 @@ def test_a_million_readings():
     fit = fit_mixed(y, x, specimen, stratum)
     assert fit.sigma_within == pytest.approx(0.04, rel=0.01)
     assert fit.contrast([1.0]).df == pytest.approx(38, rel=1e-3)
+
+
+@pytest.mark.parametrize("slopes", [False, True])
+def test_adjusted_error_is_that_of_dense_algebra(slopes):
+    """Kenward & Roger, Biometrics 53 (1997) 983, written with n x n matrices."""
+    rng = np.random.default_rng(12)
+    y, x, specimen, stratum, known = campaign(9, specimens=6)
+    x = x + rng.normal(0, 0.3, x.size)
+    fit = fit_mixed(y, x, specimen, stratum, known, x if slopes else None)
+    f = np.column_stack([x, stratum[:, None] == np.arange(4)]).astype(float)
+    same = (specimen[:, None] == specimen).astype(float)
+    parts = [np.eye(x.size), same] + ([same * np.outer(x, x)] if slopes else [])
+    theta = [fit.sigma_within**2, fit.sigma_between**2, *fit.sigma_slopes**2]
+    v = np.diag(known) + sum(t * part for t, part in zip(theta, parts, strict=True))
+    vi = np.linalg.inv(v)
+    cov = np.linalg.inv(f.T @ vi @ f)
+    p = vi - vi @ f @ cov @ f.T @ vi
+    w = np.linalg.inv([[0.5 * np.trace(p @ k @ p @ j) for j in parts] for k in parts])
+    a = vi @ f @ cov[:, 0]
+    extra = 2 * sum(
+        w[k, j] * (a @ parts[k] @ p @ parts[j] @ a)
+        for k in range(len(parts))
+        for j in range(len(parts))
+    )
+    assert fit.contrast([1.0]).se ** 2 == pytest.approx(cov[0, 0], rel=1e-6)
+    assert fit.contrast([1.0], adjusted=True).se ** 2 == pytest.approx(cov[0, 0] + extra, rel=1e-6)
+
+
+def test_a_balanced_campaign_needs_no_adjustment():
+    y, x, specimen, stratum, _ = campaign(10, gaps=False)
+    fit = fit_mixed(y, x, specimen, stratum)
+    assert fit.contrast([1.0], adjusted=True).se == pytest.approx(fit.contrast([1.0]).se, rel=1e-7)
