@@ -28,7 +28,7 @@ class Fault:
             for part in (
                 self.file,
                 f"line {self.line}" if self.line is not None else None,
-                f"column {self.column}" if self.column is not None else None,
+                f"column {self.column}" if self.file and self.column is not None else None,
             )
             if part
         )

@@ -36,5 +36,6 @@ def amend(
 
         show_json({"amended": {f: {"was": was, "is": now} for f, (was, now) in changed.items()}})
         return
-    for field, (was, now) in changed.items():
-        print(f"{kind} {name}: {field} was {was}, is {now}")
+    from campaign.present.listing import show_amended
+
+    show_amended(f"{kind} {name}", changed)

@@ -145,21 +145,31 @@ def _change_value(
     if quantity not in QUANTITIES:
         return False
     rows = {row["quantity"]: row for row in parts["fitted_value"]}
-    before = rows.get(quantity, {"value": None, "se": None, "missing": True})
+    before = rows.get(quantity, {"value": None, "se": None})
     after = read_amended(quantity, name.endswith("_se"), text, before)
-    shown = "se" if name.endswith("_se") else "value"
+    was = _shown(rows.get(quantity), name.endswith("_se"))
     if after is None:
         rows.pop(quantity, None)
-        changed[name] = (before[shown], None)
-    elif (after["value"], after["se"]) != (before["value"], before["se"]) or "missing" in before:
+    else:
         rows[quantity] = {"quantity": quantity, **after}
-        changed[name] = (before[shown], "absent" if after["value"] is None else after[shown])
+    now = _shown(rows.get(quantity), name.endswith("_se"))
+    if now != was:
+        changed[name] = (was, now)
     if not rows:
         raise refused(
             "a fit needs at least one value; withdraw the fit instead", expected="a fitted value"
         )
     parts["fitted_value"] = list(rows.values())
     return True
+
+
+def _shown(row: Row | None, error: bool) -> Any:
+    """Return a value or error as the history tells it; None where there is none."""
+    if row is None:
+        return None
+    if error:
+        return row["se"]
+    return "absent" if row["value"] is None else row["value"]
 
 
 def _replace(

@@ -116,7 +116,8 @@ def describe(connection: Connection, kind: str, row: Row) -> str:
         label = connection.execute(
             select(cell.c.label).where(cell.c.record == row["cell"]).order_by(cell.c.id.desc())
         ).scalar()
-        return f"measurement {row['record']} of cell {label} at {row['measured_at']}"
+        at = row["measured_at"][:16].replace("T", " ")
+        return f"measurement {row['record']} of cell {label} ({at} UTC)"
     return f"fit {row['record']} of measurement {row['measurement']}"
 
 

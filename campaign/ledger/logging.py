@@ -57,7 +57,7 @@ def _json_object(source: str, stream: IO[bytes] | None) -> dict[str, object]:
     content = stream.read(LARGEST + 1)
     if len(content) > LARGEST:
         raise refused(
-            "standard input holds more than one measurement can need; use 'campaign import' for "
+            "it holds more than one measurement can need; use 'campaign import' for "
             "tables",
             file="standard input",
             expected=f"at most {LARGEST} bytes",
@@ -66,20 +66,20 @@ def _json_object(source: str, stream: IO[bytes] | None) -> dict[str, object]:
         stated = json.loads(content.decode("utf-8-sig"), parse_constant=_no_constant)
     except UnicodeDecodeError:
         raise refused(
-            "standard input is not UTF-8 text", file="standard input", expected="a JSON object"
+            "it is not UTF-8 text", file="standard input", expected="a JSON object"
         ) from None
     except (json.JSONDecodeError, RecursionError) as error:
         line = getattr(error, "lineno", 1)
         what = getattr(error, "msg", "it is nested too deeply")
         raise refused(
-            f"standard input is not JSON: {what}",
+            f"it is not JSON: {what}",
             file="standard input",
             line=line,
             expected='an object such as {"cell": "C07", "R_ct": 41.2}',
         ) from None
     if not isinstance(stated, dict):
         raise refused(
-            f"standard input holds a JSON {type(stated).__name__} where one object is expected",
+            f"it holds a JSON {type(stated).__name__} where one object is expected",
             file="standard input",
             expected='an object such as {"cell": "C07", "R_ct": 41.2}',
         )
@@ -88,7 +88,7 @@ def _json_object(source: str, stream: IO[bytes] | None) -> dict[str, object]:
 
 def _no_constant(text: str) -> object:
     raise refused(
-        f"standard input holds {text}, which is no number; leave out what was not fitted",
+        f"it holds {text}, which is no number; leave out what was not fitted",
         file="standard input",
         value=text,
         expected="a finite number",

@@ -134,7 +134,7 @@ def _of_measurement(connection: Connection, row: Row) -> Row:
             fit.c.measurement == row["record"], fit.c.ended_by.is_not(None)
         )
     ).scalars()
-    shown["earlier_fits"] = sorted(set(earlier))
+    shown["earlier_fits"] = sorted(set(earlier) - {shown.get("fit")})
     return shown
 
 

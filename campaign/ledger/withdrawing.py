@@ -51,7 +51,8 @@ def _refuse_held(connection: Connection, kind: str, row: Row) -> None:
     if names:
         shown = ", ".join(names[:5]) + (" ..." if len(names) > 5 else "")
         raise refused(
-            f"{len(names)} cells stand on this {kind} ({shown}); withdraw them first",
+            f"{len(names)} cell{'s stand' if len(names) > 1 else ' stands'} on this {kind} "
+            f"({shown}); withdraw first what stands on it",
             value=row.get("label") or row.get("key"),
             expected=f"a {kind} without cells",
         )
@@ -119,15 +120,32 @@ def withdraw_import(
         row = _import_row(pen.connection, number)
         entry = pen.entry("withdraw", f"import {number}: {row['name']}")
         entry.before["import"] = number
-        for table in schema.JOURNALLED:
-            standing = pen.connection.execute(
-                select(table).where(table.c.entry == row["entry"], in_force(table))
-            ).mappings()
-            for item in standing.all():
-                entry.end(table, item)
+        _end_import(pen.connection, entry, row["entry"])
         _refuse_later(pen.connection, entry)
         _bring_back(pen, entry, row["entry"])
         return _counts(entry)
+
+
+def _end_import(connection: Connection, entry: Entry, import_entry: int) -> None:
+    """End all that the import made, with what amendments have made of it since."""
+    for table in schema.JOURNALLED:
+        if "record" not in table.c:
+            if table is schema.imported_file:
+                _end_all(connection, entry, table, table.c.entry == import_entry)
+            continue
+        made = select(table.c.record).where(
+            table.c.entry == import_entry, table.c.id == table.c.record
+        )
+        for item in _end_all(connection, entry, table, table.c.record.in_(made)):
+            end_parts(connection, entry, table.name, item["id"])
+
+
+def _end_all(connection: Connection, entry: Entry, table: Table, condition: Any) -> list[Row]:
+    rows = connection.execute(select(table).where(condition, in_force(table))).mappings()
+    found = [dict(row) for row in rows]
+    for item in found:
+        entry.end(table, item)
+    return found
 
 
 def _import_row(connection: Connection, number: int) -> Row:
@@ -173,8 +191,9 @@ def _refuse_later(connection: Connection, entry: Entry) -> None:
             entries = sorted({row[2] for row in held})
             shown = ", ".join(map(str, entries[:5]))
             raise refused(
-                f"{len(held)} {child}s entered later (journal entries {shown}) stand on a "
-                f"{target} of this import; withdraw them first",
+                f"{len(held)} {child}{'s' if len(held) > 1 else ''} entered later (journal entry "
+                f"{shown}) would lose the {target} this import made; withdraw first what was "
+                "entered later",
                 expected="an import nothing else stands on",
             )
 

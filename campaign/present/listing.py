@@ -134,13 +134,23 @@ def show_record(kind: str, record: Row) -> None:
     for key, value in record.items():
         if value is None or value == []:
             continue
-        shown = "; ".join(map(str, value)) if isinstance(value, list) else number(value, 8)
+        shown = "; ".join(map(str, value)) if isinstance(value, list) else _plain(value)
         print(f"  {key.ljust(width)}  {shown}")
+
+
+def _plain(value: Any) -> str:
+    return f"{value:.10g}" if isinstance(value, float) else number(value)
 
 
 def show_changes(rows: Sequence[Row]) -> None:
     """Print what each amendment changed, below the journal."""
     for row in rows:
         was, now = row["before"].get("was", {}), row["after"].get("is", {})
-        for field in now:
-            print(f"entry {row['entry']}: {field} was {was.get(field)}, is {now[field]}")
+        show_amended(f"entry {row['entry']}", {field: (was.get(field), now[field]) for field in now})
+
+
+def show_amended(what: str, changed: Mapping[str, tuple[Any, Any]]) -> None:
+    """Print fields with what they were and what they are."""
+    for field, pair in changed.items():
+        was, now = ("empty" if item is None else _plain(item) for item in pair)
+        print(f"{what}: {field} was {was}, is {now}")

@@ -167,7 +167,7 @@ def _read_body(
         if extra or (len(cells) < width and len(cells) == 1):
             table.faults.append(
                 Fault(
-                    f"line {line} has {len(cells)} cells and the header has {width}; check "
+                    f"it has {len(cells)} cells and the header has {width}; check "
                     "delimiters and quotation marks",
                     table.file, line, None, str(cells[-1])[:80], f"{width} cells",
                 )

@@ -91,7 +91,7 @@ def _refuse_long_lines(name: str, text: str) -> None:
     for number, line in enumerate(io.StringIO(text), 1):
         if len(line) > LONGEST_LINE:
             raise refused(
-                f"line {number} has {len(line)} characters, which no table needs",
+                f"it has {len(line)} characters, which no table needs",
                 file=name,
                 line=number,
                 expected=f"lines of at most {LONGEST_LINE} characters",
@@ -148,7 +148,7 @@ def _text_rows(name: str, text: str) -> Iterator[tuple[int, list[Any]]]:
 
 def _csv_fault(name: str, line: int, error: csv.Error) -> Refused:
     return refused(
-        f"line {line} is not a table row: {error}; check its quotation marks",
+        f"it is not a table row: {error}; check its quotation marks",
         file=name,
         line=line,
         expected="cells separated by one delimiter",
