@@ -89,18 +89,20 @@ def requested(s: Sample) -> tuple[Confounder, ...]:
 def within_cells(
     s: Sample, x: FloatArray, inside: IntArray, criteria: Criteria
 ) -> tuple[Confounder, ...]:
-    """Return whether the axis x [n] runs with age or date inside the strata `inside`."""
-    found = []
-    for name, column in times(s).items():
-        if name.startswith("batch") or not np.isfinite(column).all():
-            continue
-        dx, dz = centred(x, inside), centred(column, inside)
-        if len(dz) < 3 or float(np.ptp(dz)) < RESOLUTION_d:
-            continue
-        r = _correlation(dx[:, None], dz)
-        if r is not None and abs(r) > criteria.confounding_r:
-            found.append(Confounder(name, r, column - column.mean()))
-    return tuple(found)
+    """Return whether the axis x [n] runs with age inside the strata `inside` of one cell.
+
+    Inside a cell age and date are one thing, and its batch is fixed.
+    """
+    day = s.c.day
+    if len(day) < 3 or not np.isfinite(day).all():
+        return ()
+    dx, dz = centred(x, inside), centred(day, inside)
+    if float(np.ptp(dz)) < RESOLUTION_d:
+        return ()
+    r = _correlation(dx[:, None], dz)
+    if r is None or abs(r) <= criteria.confounding_r:
+        return ()
+    return (Confounder("age", r, day - day.mean()),)
 
 
 def without_drift(

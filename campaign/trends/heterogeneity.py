@@ -7,8 +7,9 @@ of a margin is the electrode's decision left open and the split named.
 from __future__ import annotations
 
 import math
-from collections.abc import Callable, Iterator, Sequence
-from dataclasses import dataclass
+from collections.abc import Callable, Iterator, Mapping, Sequence
+from dataclasses import dataclass, replace
+from itertools import combinations
 
 import numpy as np
 
@@ -107,6 +108,7 @@ def differences_by_group(
             key = (base % n_levels, one % n_levels)
             pairs.setdefault(key, []).append((one // n_levels, fitted.row(one, base)))
     worst: Split | None = None
+    apart = opposed(list(_effects(fitted, n_levels).values()), margin)
     for (a, b), found in pairs.items():
         if len(found) < 2:
             continue
@@ -116,8 +118,40 @@ def differences_by_group(
             [name(g) for g, _ in found], text(b, a), shown,
         )  # fmt: skip
         if split and (worst is None or split.p < worst.p):
-            worst = split
+            worst = replace(split, apart=apart)
     return worst
+
+
+def _effects(fitted: levels.LevelFit, n_levels: int) -> dict[int, dict[int, float]]:
+    """Return by group of strata the effect of each level, less that of its first level."""
+    effects: dict[int, dict[int, float]] = {}
+    beta = fitted.fit.mixed.beta
+    for linked in fitted.groups:
+        if len(linked) > 1:
+            base = linked[0]
+            effects[base // n_levels] = {
+                one % n_levels: float(fitted.row(one, base) @ beta) for one in linked
+            }
+    return effects
+
+
+def opposed(effects: Sequence[Mapping[int, float]], margin: float) -> bool:
+    """Return True where strata lead to different decisions about the levels.
+
+    effects: the level effects of each stratum. Either some stratum has a pair of levels
+    beyond the margin and another has none, or one pair is beyond it on opposite sides.
+    """
+    zones = [
+        {(a, b): zone(one[a] - one[b], margin) for a, b in combinations(sorted(one), 2)}
+        for one in effects
+    ]
+    if len({any(found.values()) for found in zones}) > 1:
+        return True
+    signs: dict[tuple[int, int], set[int]] = {}
+    for found in zones:
+        for pair, side in found.items():
+            signs.setdefault(pair, set()).add(side)
+    return any({-1, 1} <= sides for sides in signs.values())
 
 
 def _split(
@@ -195,7 +229,8 @@ def _changed(
     ends = float(z.min()), float(z.max())
     at = [effects + per_unit * (end - float(z.mean())) for end in ends]
     worst = int(np.argmax(np.abs(per_unit)))
-    apart = any(zone(float(a), margin) != zone(float(b), margin) for a, b in zip(*at, strict=True))
+    # an order is a difference from zero, an effect one from the first level
+    apart = opposed([dict(enumerate((0.0, *effect.tolist()))) for effect in at], margin)
     p = wald(per_unit, cov, df)
     said = " and ".join(
         f"{texts[worst].format(shown(float(effect[worst])))} at {end:.4g} {unit}"

@@ -19,6 +19,7 @@ from campaign.trends import (
     solvent,
     temperature,
 )
+from campaign.trends.heterogeneity import opposed
 from campaign.trends.response import RESPONSES
 from campaign.trends.sample import source
 
@@ -176,3 +177,27 @@ def test_drift_in_one_electrolyte_only_is_named(rng):
     ]
     finding = found(rows)["age"]
     assert finding.decision() == "open" and "DMC" in finding.open_because
+
+
+def test_a_weaker_pair_crossing_the_margin_does_not_open_what_a_stronger_one_decides(rng):
+    """DMC differs by more than the margin at every temperature, DEC only when cold."""
+    rows = simulate(
+        rng, solvents={"PC": 1.0, "DMC": 0.4, "DEC": 1.3}, cells=4, between=0.06,
+        barrier={"PC": 50.0, "DMC": 48.0, "DEC": 58.0},
+    )  # fmt: skip
+    finding = found(rows)["solvent"]
+    assert finding.decision() == "responds"
+    assert any("ratios differ between strata" in text for text in finding.warnings)
+
+
+@pytest.mark.parametrize(
+    ("effects", "answer"),
+    [
+        ([{0: 0.0, 1: 1.0}, {0: 0.0, 1: 0.1}], True),
+        ([{0: 0.0, 1: 1.0}, {0: 0.0, 1: -1.0}], True),
+        ([{0: 0.0, 1: 1.0, 2: 0.6}, {0: 0.0, 1: 0.9, 2: 0.1}], False),
+        ([{0: 0.0, 1: 0.1}, {0: 0.0, 1: -0.1}], False),
+    ],
+)
+def test_strata_are_opposed_when_they_would_decide_differently(effects, answer):
+    assert opposed(effects, 0.4) is answer
