@@ -162,6 +162,17 @@ def _order(name: str) -> tuple[str, str]:
     return name.casefold(), name
 
 
+# Papers write the strongly solvating solvent of a blend first: EC:DMC, not DMC:EC (common
+# practice, no source). The list is part of the canonical recipe: changing it would split
+# recipes that are stored already.
+_WRITTEN_FIRST = ("water", "EC", "PC", "FEC", "VC", "GBL", "sulfolane", "AN", "DMSO", "DMF", "DOL")
+
+
+def _solvent_order(name: str) -> tuple[int, str, str]:
+    rank = _WRITTEN_FIRST.index(name) if name in _WRITTEN_FIRST else len(_WRITTEN_FIRST)
+    return rank, *_order(name)
+
+
 # -- refusals ------------------------------------------------------------------------------
 
 
@@ -245,7 +256,9 @@ def _solvents(
     if len(blend.parts) != len(names):
         raise _wrong_count(scanner, len(names), len(blend.parts), "solvents", blend.ratio_start)
     # Sorted first, so that rounding does not depend on the order of writing.
-    pairs = sorted(zip(names, blend.parts, strict=True), key=lambda pair: _order(pair[0]))
+    pairs = sorted(
+        zip(names, blend.parts, strict=True), key=lambda pair: _solvent_order(pair[0])
+    )
     shares = normalised([part for _, part in pairs], _BLEND_PLACES)
     if shares is None:
         raise scanner.fault(

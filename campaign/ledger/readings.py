@@ -40,7 +40,7 @@ class Readings:
 
     measurement: record number. concentration: of the insertion ion over all salts, in
     `basis` ('mol/L' or 'mol/kg'). salt, solvents, additives: canonical keys
-    ('NaPF6', 'DMC:EC (1:1 v/v)', 'none'). area_cm2 [cm2], potential_V [V] against
+    ('NaPF6', 'EC:DMC (1:1 v/v)', 'none'). area_cm2 [cm2], potential_V [V] against
     `reference`, temperature_K [K], ion_content [1], E_half_V [V] against `reference`,
     measured_at and assembled_at [s since 1970-01-01 UTC], cycle [1].
     values, se: by quantity, as fitted [ohm, S s^n, 1, ohm s^-1/2], NaN where not fitted

@@ -13,7 +13,7 @@ from campaign.chemistry.species import Species, all_species
 from campaign.errors import RecipeError
 
 GROUPS = {
-    "1 mol/L NaPF6 in DMC:EC (1:1 v/v) + 2 wt% FEC": [
+    "1 mol/L NaPF6 in EC:DMC (1:1 v/v) + 2 wt% FEC": [
         "1 M NaPF6 in EC:DMC (1:1 v/v) + 2 wt% FEC",
         "1M NaPF6 in EC:DMC (1:1 v/v)+2wt% FEC",
         "1.00 mol/L NaPF6 in EC/DMC (1:1, v/v) with 2 wt.% FEC",
@@ -68,7 +68,7 @@ GROUPS = {
         "3m NaTFSI aq.",
         "3 m NaTFSI aqueous solution",
     ],
-    "0.8 mol/L NaPF6 + 0.2 mol/L NaTFSI in DEC:EC (7:3 w/w) + 0.5 wt% NaDFOB + 1 vol% VC": [
+    "0.8 mol/L NaPF6 + 0.2 mol/L NaTFSI in EC:DEC (3:7 w/w) + 0.5 wt% NaDFOB + 1 vol% VC": [
         "0.8M NaPF6 + 0.2 M NaTFSI in EC/DEC 3:7 wt + 1 vol% VC + 0.5 wt% NaDFOB",
         "0.2 M NaTFSI + 0.8 M NaPF6 in DEC:EC (7:3 w/w) + 0.5 wt% NaDFOB + 1 vol% VC",
         "0.8 M NaPF6 and 0.2 M NaTFSI in EC:DEC (30:70 by weight) with 1 vol.% VC and "
@@ -77,12 +77,12 @@ GROUPS = {
         "0.8 M NaPF6 + 0.2 M NaTFSI in EC:DEC 0.3:0.7 mass + 1 % v/v VC + 0.5 wt% NaDFOB",
         "0.8 M NaPF6/0.2 M NaTFSI in 30 wt% EC + 70 wt% DEC + 1 vol% VC + 0.5 wt% NaDFOB",
     ],
-    "1 mol/L LiTFSI in DME:DOL (1:1 v/v) + 0.2 mol/L LiNO3": [
+    "1 mol/L LiTFSI in DOL:DME (1:1 v/v) + 0.2 mol/L LiNO3": [
         "1 M LiTFSI in DOL:DME (1:1 v/v) + 0.2 M LiNO3",
         "1 M LiTFSI in 1,3-dioxolane:1,2-dimethoxyethane (1:1 v/v) + 0.2 mol/L LiNO3",
         "1 M LiN(SO2CF3)2 in 1,2-dimethoxyethane/1,3-dioxolane 1:1 by vol. with 0.2 M LiNO3",
     ],
-    "1 mol/L LiPF6 in DEC:DMC:EC (1:1:1 mol/mol)": [
+    "1 mol/L LiPF6 in EC:DEC:DMC (1:1:1 mol/mol)": [
         "1 M LiPF6 in EC:DMC:DEC (1:1:1 mol)",
         "1 M LiPF6 in EC/DMC/DEC 1/1/1 mol/mol/mol",
         "1 M LiPF6 in EC:DMC:DEC = 1:1:1 by mole",
@@ -125,13 +125,13 @@ def test_components_and_keys() -> None:
     assert parts == [
         ("salt", "NaPF6", 0.8, "mol/L"),
         ("salt", "NaTFSI", 0.2, "mol/L"),
-        ("solvent", "DEC", 0.7, "w/w"),
         ("solvent", "EC", 0.3, "w/w"),
+        ("solvent", "DEC", 0.7, "w/w"),
         ("additive", "NaDFOB", 0.5, "wt%"),
         ("additive", "VC", 1.0, "vol%"),
     ]
     assert recipe.salt_key == "NaPF6:NaTFSI (0.8:0.2)"
-    assert recipe.solvent_key == "DEC:EC (7:3 w/w)"
+    assert recipe.solvent_key == "EC:DEC (3:7 w/w)"
     assert recipe.additive_key == "0.5 wt% NaDFOB + 1 vol% VC"
     assert (recipe.basis, recipe.aqueous) == ("mol/L", False)
 
@@ -218,9 +218,9 @@ def test_species_of_the_campaign_take_precedence() -> None:
 @pytest.mark.parametrize(
     ("text", "key"),
     [
-        ("DMC:EC 1:1", "DMC:EC (1:1 v/v)"), ("EC/DMC (50:50)", "DMC:EC (1:1 v/v)"),
-        ("EC:DMC (1:1 w/w)", "DMC:EC (1:1 w/w)"), ("pc", "PC"), ("H₂O", "water"),
-        ("3:7 EC/DEC wt", "DEC:EC (7:3 w/w)"), ("DEC:EC (7:3 w/w)", "DEC:EC (7:3 w/w)"),
+        ("DMC:EC 1:1", "EC:DMC (1:1 v/v)"), ("EC/DMC (50:50)", "EC:DMC (1:1 v/v)"),
+        ("DMC:EC (1:1 w/w)", "EC:DMC (1:1 w/w)"), ("pc", "PC"), ("H₂O", "water"),
+        ("3:7 EC/DEC wt", "EC:DEC (3:7 w/w)"), ("DEC:EC (7:3 w/w)", "EC:DEC (3:7 w/w)"),
     ],
 )  # fmt: skip
 def test_solvent_key_of_what_is_typed(text: str, key: str) -> None:
