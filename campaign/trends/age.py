@@ -30,7 +30,7 @@ from campaign.trends.results import (
     ratio_of,
     ratios_of,
 )
-from campaign.trends.sample import Sample, described, draw, series, source
+from campaign.trends.sample import Sample, described, draw, recipe, series, source
 from campaign.trends.strata import combine as code
 
 LEAST_SPAN_d = 1.0
@@ -72,8 +72,7 @@ def estimate(
             try:
                 found += [_record(fit(part, criteria, law), held, criteria, law) for law in laws]
             except NoContrast as reason:
-                where = {name: held[name] for name in ("salt", "solvents", "additives")}
-                left.append(LeftOut(str(reason), len(part), electrode, **where))
+                left.append(LeftOut(str(reason), len(part), electrode, **recipe(part)))
     return AxisResult("age", response, unit(response), tuple(found), left_out=tuple(left))
 
 

@@ -32,7 +32,7 @@ from campaign.trends.results import (
     ratio_of,
     ratios_of,
 )
-from campaign.trends.sample import SERIES, Sample, attempt, described, draw, series, source
+from campaign.trends.sample import SERIES, Sample, attempt, described, draw, recipe, series, source
 from campaign.trends.strata import combine
 
 SAME_LEVEL = 0.005
@@ -78,8 +78,7 @@ def estimate(
                 fitted = attempt(part, lambda s: order(s, criteria, (), activity, age_adjusted))
                 found.append(_record(fitted, held, criteria, activity))
             except NoContrast as reason:
-                where = {name: held[name] for name in ("salt", "solvents", "additives")}
-                left.append(LeftOut(str(reason), len(part), electrode, **where))
+                left.append(LeftOut(str(reason), len(part), electrode, **recipe(part)))
     return AxisResult("concentration", response, unit(response), tuple(found), left_out=tuple(left))
 
 

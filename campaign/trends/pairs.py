@@ -32,7 +32,7 @@ from campaign.trends.results import (
     ratio_of,
     ratios_of,
 )
-from campaign.trends.sample import Sample, attempt, described, draw, source
+from campaign.trends.sample import Sample, attempt, described, draw, source, texts
 from campaign.trends.strata import combine, match
 
 SAME_CONCENTRATION = 0.005
@@ -253,7 +253,8 @@ def simultaneous(e: Estimate, finding: Finding, alpha: float) -> tuple[float, fl
 def _records(fitted: PairsFit, criteria: Criteria, how: Comparison) -> list[RatioEstimate]:
     s, finding, alpha = fitted.sample, fitted.finding, criteria.error_probability
     shown = outliers(s, fitted.fit.fit)
-    common = {**described(s, _recipe(s, how)), "warnings": finding.warnings}
+    held = {name: texts(s, name) for name in how.held}
+    common = {**described(s, held), "warnings": finding.warnings}
     return [
         RatioEstimate(
             **common,
@@ -271,13 +272,3 @@ def _records(fitted: PairsFit, criteria: Criteria, how: Comparison) -> list[Rati
         )
         for c in finding.contrasts
     ]
-
-
-def _recipe(s: Sample, how: Comparison) -> dict[str, str]:
-    """Return the held recipe columns, joined where several strata were combined."""
-    return {name: _only(s, name) for name in how.held}
-
-
-def _only(s: Sample, column: str) -> str:
-    codes = np.unique(getattr(s.c, column))
-    return "; ".join(s.c.name(column, int(code)) for code in codes)

@@ -11,6 +11,8 @@ import math
 from dataclasses import replace
 from typing import Any
 
+import numpy as np
+
 from campaign.ledger.criteria import Criteria
 from campaign.ledger.readings import Snapshot
 from campaign.trends import spans
@@ -28,7 +30,17 @@ from campaign.trends.results import (
     ratio_of,
     ratios_of,
 )
-from campaign.trends.sample import Sample, described, draw, series, source
+from campaign.trends.sample import (
+    SERIES,
+    Sample,
+    described,
+    draw,
+    recipe,
+    series,
+    source,
+    texts,
+)
+from campaign.trends.strata import combine
 
 PLATEAU = "in a declared two-phase plateau"
 
@@ -40,36 +52,56 @@ def estimate(
     *,
     porous: bool = True,
     scale: str | None = None,
+    together: bool = False,
 ) -> AxisResult:
     """Return span and law over the potential of every series and reference scale.
 
-    Raises Refused for an unknown response.
+    together: all electrolytes of an electrode on one scale as one series, each specimen
+    within its own. Raises Refused for an unknown response.
     """
     found: list[PotentialEstimate] = []
     left: list[LeftOut] = []
     for electrode in electrodes(snapshot):
         whole = draw(snapshot, source(snapshot, criteria, electrode, scale), response, porous)
         left += whole.left_out
-        by = ("salt", "solvents", "additives", "basis", "scale")
+        by = ("scale",) if together else (*SERIES, "scale")
         for held, part in series(replace(whole, left_out=()), by):
             try:
                 found.append(_record(part, held, criteria))
             except NoContrast as reason:
-                where = {name: held[name] for name in ("salt", "solvents", "additives")}
-                left.append(LeftOut(str(reason), len(part), electrode, **where))
+                left.append(LeftOut(str(reason), len(part), electrode, **recipe(part)))
     return AxisResult("potential", response, unit(response), tuple(found), left_out=tuple(left))
 
 
 def prepare(s: Sample) -> Sample:
-    """Return the readings with a potential outside the declared plateaus, counted."""
-    s = s.leaving(~_finite(s), "no potential recorded")
-    return s.leaving(s.c.plateau, PLATEAU)
+    """Return the readings with a potential outside the declared plateaus, counted.
+
+    Against a fixed reference the half-filling potential moves with the electrolyte; where it
+    is recorded the potentials of that scale are counted from it, and shown around its median.
+    """
+    s = s.leaving(~np.isfinite(s.c.x_V), "no potential recorded")
+    return _from_half_filling(s.leaving(s.c.plateau, PLATEAU))
 
 
-def _finite(s: Sample) -> spans.BoolArray:
-    import numpy as np
-
-    return np.asarray(np.isfinite(s.c.x_V), np.bool_)
+def _from_half_filling(s: Sample) -> Sample:
+    x_V, fixed = s.c.x_V.copy(), s.c.fixed.copy()
+    warnings = []
+    for code in np.unique(s.c.scale):
+        rows = s.c.scale == code
+        offset = s.c.offset_V[rows]
+        if (s.c.own[rows] >= 0).any() or not np.isfinite(offset).all():
+            continue
+        half = float(np.median(s.c.x_V[rows] - offset))
+        x_V[rows] = offset + half
+        fixed[rows] = s.c.offset[rows]
+        warnings.append(
+            f"potentials against {s.c.name('scale', int(code))} were counted from the recorded "
+            f"half-filling potential and are shown around its median, {half:.4g} V"
+        )
+    if not warnings:
+        return s
+    c = replace(s.c, x_V=x_V, fixed=combine(s.c.scale, fixed))
+    return replace(s, c=c).warned(*warnings)
 
 
 def finding(s: Sample, criteria: Criteria) -> tuple[Sample, Finding, spans.Span]:
@@ -109,16 +141,15 @@ def _record(s: Sample, held: dict[str, str], criteria: Criteria) -> PotentialEst
     s, found, span = finding(s, criteria)
     alpha = criteria.error_probability
     law = choose(s, alpha)
-    reference = held.pop("scale")
     value, interval = span_interval(found, alpha)
     return PotentialEstimate(
-        **described(s, held),
+        **described(s, {**recipe(s), "basis": texts(s, "basis")}),
         law=law.name,
         span=value,
         span_ci=interval,
         **_parameters(law),
         window_V=span.window_V,
-        reference=reference,
+        reference=held["scale"],
         aicc=law.aicc,
         levels=span.levels,
         df=span.df,

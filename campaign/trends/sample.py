@@ -137,6 +137,16 @@ def series(s: Sample, by: tuple[str, ...] = SERIES) -> Iterator[tuple[dict[str, 
         yield {name: s.c.name(name, int(getattr(part.c, name)[0])) for name in by}, part
 
 
+def texts(s: Sample, column: str) -> str:
+    """Return the texts of a coded column, joined where there are several."""
+    return "; ".join(s.c.name(column, int(code)) for code in np.unique(getattr(s.c, column)))
+
+
+def recipe(s: Sample) -> dict[str, str]:
+    """Return salt, solvents and additives of a sample."""
+    return {name: texts(s, name) for name in ("salt", "solvents", "additives")}
+
+
 def described(s: Sample, held: Mapping[str, str]) -> dict[str, Any]:
     """Return the fields every estimate of a sample carries: what, how many, which rows."""
     return {

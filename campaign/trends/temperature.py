@@ -36,7 +36,7 @@ from campaign.trends.results import (
     LeftOut,
     decision_text,
 )
-from campaign.trends.sample import Sample, attempt, described, draw, series, source
+from campaign.trends.sample import Sample, attempt, described, draw, recipe, series, source
 
 
 def estimate(
@@ -63,8 +63,7 @@ def estimate(
             try:
                 found.append(attempt(part, partial(_record, held=held, criteria=criteria)))
             except NoContrast as reason:
-                where = {name: held[name] for name in ("salt", "solvents", "additives")}
-                left.append(LeftOut(str(reason), len(part), electrode, **where))
+                left.append(LeftOut(str(reason), len(part), electrode, **recipe(part)))
         for how in (BARRIER_BY_SOLVENT, BARRIER_BY_ADDITIVE):
             differences += _differences(whole, criteria, how)
     return AxisResult(

@@ -277,3 +277,12 @@ def test_the_age_is_held_on_request(rng):
     assert orders(rows).estimates[0].adjusted is None
     adjusted = orders(rows, age_adjusted=True).estimates[0].adjusted
     assert adjusted.for_what == "age" and adjusted.ci[0] < 0.5 < adjusted.ci[1]
+
+
+def test_clean_campaigns_seldom_show_an_outlier():
+    """The bound is made for 5 % of campaigns, for specimens and readings each."""
+    shown = 0
+    for seed in range(60):
+        rows = simulate(np.random.default_rng(seed), cells=2, repeats=1)
+        shown += bool(orders(rows).estimates[0].outliers)
+    assert shown <= 14  # 60 campaigns, 10 %: more than 14 has a chance below 0.1 %

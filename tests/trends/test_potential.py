@@ -133,3 +133,25 @@ def test_a_potential_seen_in_one_specimen_only_is_named_and_not_compared(rng):
     e = spans(rows).estimates[0]
     assert e.decision == "unresponsive" and max(e.levels) == pytest.approx(3.2)
     assert any("one specimen only" in text and "3.5 V" in text for text in e.warnings)
+
+
+def test_against_a_fixed_reference_potentials_count_from_the_half_filling(rng):
+    """Each concentration has its own half-filling potential and its own set potentials."""
+    rows = campaign(rng, cosh_valley, cells=2)
+    for row in rows:
+        half = 0.2 + GAS * 298.15 / FARADAY * math.log(row["concentration"])
+        row.update(reference="Ag/AgCl", potential_V=row["potential_V"] - 3.02 + half, E_half_V=half)
+    e = spans(rows).estimates[0]
+    assert e.decision == "responds" and len(e.levels) == len(POTENTIALS)
+    assert e.law == "valley" and any("half-filling" in text for text in e.warnings)
+    middle = np.median([row["E_half_V"] for row in rows])
+    assert e.E0_ci[0] < middle < e.E0_ci[1]
+
+
+def test_electrolytes_together_decide_a_law_that_single_ones_leave_open(rng):
+    held = {"cells": 1, "concentrations": (0.3, 1.0, 3.0)}
+    rows = campaign(rng, cosh_valley, solvents={"PC": 1.0, "DMC": 2.0, "DEC": 1.0}, **held)
+    assert {e.law for e in spans(rows).estimates} == {"open"}
+    whole = spans(rows, together=True).estimates
+    assert [e.law for e in whole] == ["valley"]
+    assert whole[0].solvents == "DEC; DMC; PC" and whole[0].n_specimens == 9
