@@ -16,6 +16,7 @@ A = Z' D^-1 Z, which holds with variances at exactly zero [2].
 [1] Patterson & Thompson, Biometrika 58 (1971) 545; Harville, J. Am. Stat. Assoc. 72 (1977) 320;
     Pinheiro & Bates, Mixed-Effects Models in S and S-PLUS (2000), ch. 2.
 [2] Woodbury, Memorandum Report 42, Princeton (1950).
+[3] Gilmour, Thompson & Cullis, Biometrics 51 (1995) 1440: average information.
 """
 
 from __future__ import annotations
@@ -34,8 +35,8 @@ class Point:
 
     loglik; beta (f,) and cov (f, f) of all fixed effects (X, then strata);
     score (1 + q,) and information (1 + q, 1 + q), expected;
-    spread (f, f) = F' V^-2 F; third (f, f) = F' V^-3 F; rz (m, q, f) = Z' V^-1 F;
-    rz2 (m, q, f) = Z' V^-2 F; zpy (m, q) = Z' P y; zvz (m, q, q) = Z' V^-1 Z;
+    with E = [F y]: ev2e, ev3e (f + 1, f + 1) = E' V^-2 E, E' V^-3 E; ze1, ze2 (m, q, f + 1) =
+    Z' V^-1 E, Z' V^-2 E; zpy (m, q) = Z' P y; zvz (m, q, q) = Z' V^-1 Z;
     inner (m, q, q) = the T of V^-1 = D^-1 - D^-1 Z T Z' D^-1;
     first: the sums with weights D^-1.
     """
@@ -46,14 +47,34 @@ class Point:
     cov: Array
     score: Array
     information: Array
-    spread: Array
-    third: Array
-    rz: Array
-    rz2: Array
+    ev2e: Array
+    ev3e: Array
+    ze1: Array
+    ze2: Array
     zpy: Array
     zvz: Array
     inner: Array
     first: Grams
+
+    @property
+    def average(self) -> Array:
+        """Return the average information 1/2 y' P V_k P V_l P y, (1 + q, 1 + q) [3]."""
+        return 0.5 * self.forms(np.append(-self.beta, 1.0))
+
+    def forms(self, r: Array) -> Array:
+        """Return a' V_k P V_l a, (1 + q, 1 + q), for a = V^-1 E r."""
+        f = self.beta.size
+        seen = self.ze1 @ r  # Z_k' a, so that V_k a = Z_k seen_k
+        q = seen.shape[1]
+        back = np.einsum("ik,ikf->kf", seen, self.ze1[..., :f])
+        second = self.ev2e[:f] @ r
+        found = np.empty((1 + q, 1 + q))
+        found[0, 0] = r @ self.ev3e @ r - second @ self.cov @ second
+        across = (seen * (self.ze2 @ r)).sum(axis=0)
+        found[0, 1:] = found[1:, 0] = across - back @ self.cov @ second
+        found[1:, 1:] = np.einsum("ik,ikl,il->kl", seen, self.zvz, seen)
+        found[1:, 1:] -= back @ self.cov @ back.T
+        return found
 
 
 @dataclass(frozen=True)
@@ -103,10 +124,11 @@ class Likelihood:
             value += logdet_f - f * math.log(2 * math.pi)
         zvz = one.zz - one.zz @ inner @ one.zz
         left = np.eye(q) - one.zz @ inner
-        zb = two.ze[..., :f] - two.zz @ tr[..., :f]
+        zb = two.ze - two.zz @ tr
+        third_all = _third(three, inner, tr, zb)
         pieces = _Pieces(
-            inner, rz_all[..., :f], left @ zb, zvz, spread_all[:f, :f],
-            _third(three, inner, tr[..., :f], zb), cov,
+            inner, rz_all[..., :f], (left @ zb)[..., :f], zvz, spread_all[:f, :f],
+            third_all[:f, :f], cov,
         )  # fmt: skip
         traces, information = pieces.moments(one, two, three, left, self.reml)
         squares = np.empty(1 + q)
@@ -114,7 +136,7 @@ class Likelihood:
         squares[1:] = (zpy**2).sum(axis=0)
         return Point(
             theta, -0.5 * value, beta, cov, 0.5 * (squares - traces), information,
-            pieces.spread, pieces.third, pieces.rz, pieces.rz2, zpy, zvz, inner, one,
+            spread_all, third_all, rz_all, left @ zb, zpy, zvz, inner, one,
         )  # fmt: skip
 
 
@@ -145,18 +167,21 @@ def _second(one: Grams, two: Grams, inner: Array, tr: Array) -> Array:
 
 
 def _third(three: Grams, inner: Array, tr: Array, zb: Array) -> Array:
-    """Return F' V^-3 F; zb (m, q, f) = Z' D^-1 V^-1 F."""
+    """Return E' V^-3 E; zb (m, q, f + 1) = Z' D^-1 V^-1 E."""
     f = tr.shape[2]
     t, b = tr.reshape(-1, f), zb.reshape(-1, f)
-    cross = t.T @ three.ze[..., :f].reshape(-1, f)
-    whole = three.ee[:f, :f] - cross - cross.T + t.T @ (three.zz @ tr).reshape(-1, f)
+    cross = t.T @ three.ze.reshape(-1, f)
+    whole = three.ee - cross - cross.T + t.T @ (three.zz @ tr).reshape(-1, f)
     third: Array = whole - b.T @ (inner @ zb).reshape(-1, f)
     return third
 
 
 @dataclass(frozen=True)
 class _Pieces:
-    """Blocks shared by the traces; names as in `Point`."""
+    """Blocks shared by the traces, of the fixed effects F alone.
+
+    rz, rz2 (m, q, f) = Z' V^-1 F, Z' V^-2 F; spread, third (f, f) = F' V^-2 F, F' V^-3 F.
+    """
 
     inner: Array
     rz: Array

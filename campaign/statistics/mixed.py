@@ -156,10 +156,11 @@ class MixedFit:
         point = self._point
         free = np.flatnonzero(self._free)
         carried = point.cov @ direction
+        f = carried.size
         variance = float(direction @ carried)
         slope = np.empty(point.theta.size)
-        slope[0] = carried @ point.spread @ carried
-        slope[1:] = ((point.rz @ carried) ** 2).sum(axis=0)
+        slope[0] = carried @ point.ev2e[:f, :f] @ carried
+        slope[1:] = ((point.ze1[..., :f] @ carried) ** 2).sum(axis=0)
         slope = slope[free]
         info = point.information[np.ix_(free, free)]
         about = float(slope @ solve(info, slope))
@@ -168,21 +169,10 @@ class MixedFit:
     def _adjustment(self, direction: Array) -> float:
         """Return 2 sum_kl (I^-1)_kl a' V_k P V_l a [4], a = V^-1 F C c."""
         point = self._point
-        carried = point.cov @ direction
-        seen = point.rz @ carried  # Z_k' a, so that V_k a = Z_k seen_k
-        q = seen.shape[1]
-        back = np.einsum("ik,ikf->kf", seen, point.rz)
-        inner = np.empty((1 + q, 1 + q))
-        second = point.spread @ carried
-        inner[0, 0] = carried @ point.third @ carried - second @ point.cov @ second
-        across = np.einsum("ik,ikf,f->k", seen, point.rz2, carried)
-        inner[0, 1:] = inner[1:, 0] = across - back @ point.cov @ second
-        inner[1:, 1:] = np.einsum("ik,ikl,il->kl", seen, point.zvz, seen)
-        inner[1:, 1:] -= back @ point.cov @ back.T
         free = np.flatnonzero(self._free)
+        forms = point.forms(np.append(point.cov @ direction, 0.0))[np.ix_(free, free)]
         info = point.information[np.ix_(free, free)]
-        rows = inner[np.ix_(free, free)]
-        total = sum(float(solve(info, rows[k])[k]) for k in range(free.size))
+        total = sum(float(solve(info, forms[k])[k]) for k in range(free.size))
         return max(2 * total, 0.0)
 
 

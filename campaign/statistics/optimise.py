@@ -1,11 +1,13 @@
-"""Fisher scoring for variances that may be exactly zero.
+"""Scoring for variances that may be exactly zero.
 
-Steps I^-1 s, with the expected information I and the score s, are projected on g_k >= 0: a
-variance driven below zero is set to zero exactly and released again only if the likelihood
-rises away from zero. Steps are halved until the likelihood rises.
+Steps I^-1 s are projected on g_k >= 0: a variance driven below zero is set to zero exactly and
+released again only if the likelihood rises away from zero. Steps are halved until the
+likelihood rises. I is the expected information far from the top, which is always safe, and
+near it the observed information, twice the average [2] less the expected, where positive.
 
 [1] Harville, J. Am. Stat. Assoc. 72 (1977) 320 (scoring for variance components);
     Bertsekas, SIAM J. Control Optim. 20 (1982) 221 (projected Newton steps).
+[2] Gilmour, Thompson & Cullis, Biometrics 51 (1995) 1440.
 """
 
 from __future__ import annotations
@@ -21,6 +23,7 @@ Mask = npt.NDArray[np.bool_]
 _STEPS = 200
 _HALVINGS = 30
 _DECREMENT = 1e-13
+_NEAR = 2.0
 _SHRINK = 0.05
 
 
@@ -44,8 +47,9 @@ def _climb(likelihood: Likelihood, start: Array, free: Mask, floor: float) -> Po
     lowest = np.zeros(start.size)
     lowest[0] = floor
     point = likelihood.at(np.where(free, np.maximum(start, lowest), start))
+    decrement = np.inf
     for _ in range(_STEPS):
-        step, decrement = _step(point, free, lowest)
+        step, decrement = _step(point, _curvature(point, decrement), free, lowest)
         if decrement < _DECREMENT:
             break
         following = _search(likelihood, point, step, lowest)
@@ -55,9 +59,20 @@ def _climb(likelihood: Likelihood, start: Array, free: Mask, floor: float) -> Po
     return point
 
 
-def _step(point: Point, free: Mask, lowest: Array) -> tuple[Array, float]:
+def _curvature(point: Point, decrement: float) -> Array:
+    """Return the expected information, near the top the observed one where that is positive."""
+    if decrement < _NEAR:
+        observed = 2 * point.average - point.information
+        if (observed.diagonal() > 0).all():
+            unit = 1.0 / np.sqrt(observed.diagonal())
+            if np.linalg.eigvalsh(unit[:, None] * observed * unit)[0] > 0.01:
+                return observed
+    return point.information
+
+
+def _step(point: Point, information: Array, free: Mask, lowest: Array) -> tuple[Array, float]:
     """Return the step of what may move, and twice the gain it promises."""
-    score, information = point.score, point.information
+    score = point.score
     held = (point.theta <= lowest) & (score <= 0)
     moving = np.flatnonzero(free & ~held)
     step = np.zeros(score.size)

@@ -52,7 +52,7 @@ def studentised_specimens(data: Data, point: Point, df: int) -> Array:
 
     Z_i' P y / sqrt(Z_i' P Z_i), which is defined with sigma_between at zero too.
     """
-    rz = point.rz[:, 0, :]
+    rz = point.ze1[:, 0, :-1]
     whole = point.zvz[:, 0, 0]
     spare = whole - ((rz @ point.cov) * rz).sum(axis=1)
     return _external(point.zpy[:, 0], spare, whole, df)
