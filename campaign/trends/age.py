@@ -17,7 +17,7 @@ from campaign.ledger.readings import Snapshot
 from campaign.statistics.estimate import Estimate
 from campaign.statistics.random_effects import Combined, combine
 from campaign.statistics.two_stage import Slopes, specimen_slopes
-from campaign.trends.between import NoContrast
+from campaign.trends.between import NoContrast, lone
 from campaign.trends.conditions import DAY_s, electrodes
 from campaign.trends.findings import Contrast, Finding
 from campaign.trends.heterogeneity import Split, between_groups
@@ -84,10 +84,12 @@ def fit(s: Sample, criteria: Criteria, law: str = LOG_LINEAR) -> AgeFit:
     age_d = np.maximum(s.c.age_s, 0.0) / DAY_s
     x = np.sqrt(age_d) if law == SQUARE_ROOT else age_d
     inside = code(s.c.cell, s.c.temperature, s.c.scale, s.c.fixed)
-    try:
-        slopes = specimen_slopes(s.y, x, code(s.c.specimen), inside, s.known)
-    except NoContrast:
-        raise NoContrast("no cell was measured twice under equal conditions") from None
+    once = lone(inside, np.unique(x, return_inverse=True)[1])
+    if once.all():
+        raise NoContrast("no cell was measured twice under equal conditions")
+    s = s.leaving(once, "not measured again under equal conditions")
+    x, inside, age_d = x[~once], inside[~once], age_d[~once]
+    slopes = specimen_slopes(s.y, x, code(s.c.specimen), inside, s.known)
     together = combine(slopes.slope, slopes.variance)
     greatest = float(x.max())
     rate = together.estimate

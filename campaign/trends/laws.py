@@ -141,10 +141,10 @@ def _chosen(
     ranked = sorted(scores, key=lambda name: scores[name])
     best, second = ranked[0], ranked[1]
     if not math.isfinite(scores[best]) or not math.isfinite(scores["exponential"]):
-        text = f"{curves.n_specimens} specimens are too few to compare laws over the potential"
+        text = f"{_specimens(curves)} too few to compare laws over the potential"
         return Law("open", scores, warnings=(text,))
     if n_levels > 3 and not math.isfinite(scores["valley"]):
-        text = f"{curves.n_specimens} specimens are too few to test for a valley"
+        text = f"{_specimens(curves)} too few to test for a valley"
         return Law("open", scores, warnings=(text,))
     if scores[second] - scores[best] < LEAST_DIFFERENCE:
         text = f"{best} and {second} cannot be told apart (AICc differs by less than 2)"
@@ -155,6 +155,11 @@ def _chosen(
     if best == "valley" and valley is not None:
         return _with_parameters(scores, curves, valley, alpha)
     return Law(best, scores)
+
+
+def _specimens(curves: _Curves) -> str:
+    n = curves.n_specimens
+    return "one specimen is" if n == 1 else f"{n} specimens are"
 
 
 def _valley(curves: _Curves) -> _Valley | None:

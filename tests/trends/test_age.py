@@ -58,3 +58,14 @@ def test_nothing_repeated_is_a_reason(rng):
     result = drifts(simulate(rng, repeats=1))
     assert result.estimates == ()
     assert result.left_out[0].reason == "no cell was measured twice under equal conditions"
+
+
+def test_only_cells_that_were_read_again_count(rng):
+    rows = simulate(rng, ages=weekly, repeats=3, concentrations=(1.0,), cells=4)
+    last = [row for row in rows if row["cell"] == "cell 4"]
+    rows = [row for row in rows if row["cell"] != "cell 4"] + last[::3]
+    e = drifts(rows).estimates[0]
+    assert e.n_specimens == 3
+    assert [(gone.reason, gone.count) for gone in e.left_out] == [
+        ("not measured again under equal conditions", 5)
+    ]
