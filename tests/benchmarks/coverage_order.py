@@ -2,7 +2,7 @@
 
 Simulated campaigns with a fixed seed: 4 concentrations, cells of 15 readings in 15 strata,
 scatter 15 % between specimens and 4 % within unless the case says otherwise. Beside the mixed
-model stands the straight line through all points of a log-log plot. The interval of a coverage
+model stands the straight line through all points of a log-log plot, its conditions held. The interval of a coverage
 is the exact one of Clopper & Pearson.
 
     python tests/benchmarks/coverage_order.py [campaigns]
@@ -67,18 +67,11 @@ def simulate(case: Case, rng: np.random.Generator):
     return y[keep], x[keep], specimen[keep], stratum[keep], known
 
 
-def pooled_line(y, x) -> tuple[float, float]:
-    """Return slope and half width of the 95 % interval of the line through all points."""
-    xc = x - x.mean()
-    slope = float(xc @ y) / float(xc @ xc)
-    rest = y - y.mean() - slope * xc
-    df = y.size - 2
-    se = (float(rest @ rest) / df / float(xc @ xc)) ** 0.5
-    return slope, float(stdtrit(df, 0.975)) * se
+def pooled_line(y, x, stratum) -> tuple[float, float]:
+    """Return slope and half width of the 95 % interval of one line through all points.
 
-
-def per_stratum_pooled(y, x, stratum) -> tuple[float, float]:
-    """Return the same after the stratum means are taken out: the pooled line at its best."""
+    The stratum means are taken out first: the line at its best.
+    """
     count = np.bincount(stratum, minlength=STRATA)
     count = np.maximum(count, 1)
     xc = x - (np.bincount(stratum, x, STRATA) / count)[stratum]
@@ -108,7 +101,7 @@ def run(case: Case, campaigns: int) -> str:
         values.append(estimate.value)
         errors.append(estimate.se)
         widths.append(interval[1] - interval[0])
-        slope, half = per_stratum_pooled(y, -x, stratum)
+        slope, half = pooled_line(y, -x, stratum)
         line_hits += abs(slope - ORDER) <= half
         line_widths.append(2 * half)
     n = len(values)
