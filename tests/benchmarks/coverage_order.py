@@ -2,8 +2,8 @@
 
 Simulated campaigns with a fixed seed: 4 concentrations, cells of 15 readings in 15 strata,
 scatter 15 % between specimens and 4 % within unless the case says otherwise. Beside the mixed
-model stands the straight line through all points of a log-log plot, its conditions held. The interval of a coverage
-is the exact one of Clopper & Pearson.
+model stands the straight line through all points of a log-log plot, its conditions held. The
+interval of a coverage is the exact one of Clopper & Pearson.
 
     python tests/benchmarks/coverage_order.py [campaigns]
 """
