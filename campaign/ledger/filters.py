@@ -8,8 +8,6 @@ from typing import TYPE_CHECKING, Any
 from campaign.errors import RecipeError, refused
 
 if TYPE_CHECKING:
-    from collections.abc import Callable
-
     from sqlalchemy import Connection
 
 
@@ -95,7 +93,6 @@ def read_filter(
     Raises Refused for an unknown electrode (with near labels), an unreadable recipe part,
     range or date.
     """
-    from campaign.chemistry.recipes import additive_key_of, salt_key_of, solvent_key_of
     from campaign.ledger.selecting import entry_at, require_electrode
 
     if electrode is not None and as_of is None:
@@ -103,9 +100,9 @@ def read_filter(
     day_end = _day_end(connection, as_of, "as-of") if as_of is not None else None
     return Filter(
         electrode=electrode,
-        salt=_key(salt, salt_key_of, "salt"),
-        solvents=_key(solvents, solvent_key_of, "solvents"),
-        additives=_key(additives, additive_key_of, "additives"),
+        salt=_key(salt, "salt"),
+        solvents=_key(solvents, "solvents"),
+        additives=_key(additives, "additives"),
         potential=None if potential is None else read_range(potential, "potential"),
         temperature=None if temperature is None else read_range(temperature, "temperature"),
         since=None if since is None else _instant(connection, since, "since"),
@@ -114,11 +111,14 @@ def read_filter(
     )
 
 
-def _key(text: str | None, canonical: Callable[[str], str], name: str) -> str | None:
+def _key(text: str | None, name: str) -> str | None:
     if text is None:
         return None
+    from campaign.chemistry.recipes import additive_key_of, salt_key_of, solvent_key_of
+
+    canonical = {"salt": salt_key_of, "solvents": solvent_key_of, "additives": additive_key_of}
     try:
-        return canonical(text)
+        return canonical[name](text)
     except RecipeError as error:
         raise refused(
             f"--{name} is '{text}': {error}", column=name, value=text, expected=error.expected
