@@ -16,13 +16,15 @@ NOW = "2026-03-01T08:00:00.000000Z"
 
 
 @pytest.fixture
-def raw(tmp_path):
+def ledger(tmp_path):
     """A campaign with one of everything, opened as a SQL shell would (no pragmas)."""
     path = tmp_path / "campaign.sqlite"
     start(str(path))
     connection = sqlite3.connect(path, isolation_level=None)
     connection.execute("PRAGMA foreign_keys = ON")
     entry(connection)
+    # Components wait for their electrolyte until the end of the transaction.
+    connection.execute("BEGIN")
     component(connection, 0, "salt", "NaPF6", 1.0, "mol/L")
     component(connection, 1, "solvent", "EC", 0.5, "v/v")
     component(connection, 2, "solvent", "DMC", 0.5, "v/v")
@@ -32,6 +34,7 @@ def raw(tmp_path):
     insert(connection, "measurement", MEASUREMENT)
     insert(connection, "fit", FIT)
     insert(connection, "fitted_value", VALUE)
+    connection.execute("COMMIT")
     yield connection
     connection.close()
 
@@ -79,18 +82,11 @@ def insert(connection, table, row, verb="INSERT"):
 
 def component(connection, position, role, species, amount, basis, electrolyte=1):
     row = (electrolyte, position, role, species, amount, basis, latest(connection))
-    if connection.in_transaction is False:
-        connection.execute("BEGIN")
     connection.execute(
         "INSERT INTO electrolyte_component (electrolyte, position, role, species, amount, basis,"
         " entry) VALUES (?, ?, ?, ?, ?, ?, ?)",
         row,
     )
-
-
-@pytest.fixture(autouse=True)
-def _close_blend(request):
-    """Components wait for their electrolyte inside a transaction; commit it once it is there."""
 
 
 def refused(connection, statement, values=(), match=None):
@@ -115,12 +111,6 @@ TABLES = (
     "journal", "setting", "electrolyte", "electrolyte_component", "electrode", "cell",
     "measurement", "fit", "fitted_value", "quantity",
 )  # fmt: skip
-
-
-@pytest.fixture
-def ledger(raw):
-    raw.execute("COMMIT")
-    return raw
 
 
 def test_a_sound_campaign_passes_its_own_rules(ledger):
@@ -194,11 +184,15 @@ def test_standard_errors_are_finite_and_positive(ledger, se):
 
 
 def test_nan_becomes_null_and_null_means_absent_only_where_an_arc_may_be_absent(ledger):
+    entry(ledger)
+    insert(ledger, "measurement", second(MEASUREMENT, measured_at=NOW.replace("08", "09")))
+    insert(ledger, "fit", second(FIT, measurement=2))
     for quantity in ("R_el", "R_ct", "sigma_w", "Q_sl", "n_ct"):
-        row = {**VALUE, "quantity": quantity, "value": float("nan"), "se": None}
+        row = {**VALUE, "fit": 2, "quantity": quantity, "value": float("nan"), "se": None}
         refuses(ledger, "fitted_value", row, "CHECK")
     for quantity in ("R_sl", "R_lat"):
-        insert(ledger, "fitted_value", {**VALUE, "quantity": quantity, "value": None, "se": None})
+        row = {"fit": 2, "quantity": quantity, "value": None, "se": None}
+        insert(ledger, "fitted_value", row)
 
 
 def test_an_absent_arc_has_no_standard_error(ledger):
@@ -394,6 +388,7 @@ def test_a_standing_recipe_takes_no_more_components(ledger):
 
 def test_components_do_not_stand_without_their_electrolyte(ledger):
     entry(ledger)
+    ledger.execute("BEGIN")
     component(ledger, 0, "salt", "NaPF6", 1.0, "mol/L", electrolyte=9)
     with pytest.raises(sqlite3.Error, match="FOREIGN KEY"):
         ledger.execute("COMMIT")
