@@ -27,11 +27,12 @@ def withdraw(
     from campaign.ledger import withdrawing
     from campaign.ledger.database import open_database
     from campaign.ledger.fields import clean_text
+    from campaign.ledger.finding import is_number
 
     why = clean_text(reason, "reason")
     database = open_database(db)
     if kind == "import":
-        if not name.isdigit():
+        if not is_number(name):
             raise refused(
                 f"an import is named by its number; '{name}' is not one; 'campaign list imports' "
                 "shows them",
@@ -46,5 +47,7 @@ def withdraw(
 
         show_json({"withdrawn": counts})
         return
-    listed = ", ".join(f"{count} {kind}{'s' if count != 1 else ''}" for kind, count in counts.items())
+    listed = ", ".join(
+        f"{count} {noun}{'s' if count != 1 else ''}" for noun, count in counts.items()
+    )
     print(f"Withdrawn: {listed}.")

@@ -15,6 +15,7 @@ from typing import TYPE_CHECKING, Any
 from sqlalchemy import and_, func, select
 
 from campaign.ledger import schema
+from campaign.ledger.database import is_file
 from campaign.ledger.journal import FIRST, digest, ended_line, entry_hash, keys, made_line
 from campaign.ledger.settings import in_force
 
@@ -36,7 +37,9 @@ class Problem:
     grave: bool = True
 
 
-def check(connection: Connection, head: str | None = None, folder: Path | None = None) -> list[Problem]:
+def check(
+    connection: Connection, head: str | None = None, folder: Path | None = None
+) -> list[Problem]:
     """Return everything wrong with the campaign, grave problems first.
 
     head: the hash an earlier check, report or backup printed; a journal that no longer
@@ -123,7 +126,7 @@ def _lines(
     for table in schema.JOURNALLED:
         names = keys(table)
         for row in connection.execute(select(table).order_by(*table.primary_key)).mappings():
-            made.setdefault(row["entry"], []).append(made_line(table.name, row))
+            made.setdefault(row["entry"], []).append(made_line(table.name, dict(row)))
             if row["ended_by"] is not None:
                 line = ended_line(table.name, [row[name] for name in names])
                 ended.setdefault(row["ended_by"], []).append(line)
@@ -131,8 +134,6 @@ def _lines(
                 if number is not None and number not in known:
                     strays.append((table.name, number))
     return made, ended, strays
-
-
 
 
 def _storage(connection: Connection) -> Iterator[Problem]:
@@ -180,19 +181,26 @@ def _spectra(connection: Connection, folder: Path) -> Iterator[Problem]:
     for record, name, known in rows:
         path = folder / name
         about = f"measurement {record}"
-        if not path.is_file():
+        if not is_file(path):
             yield Problem(
                 about,
                 f"its spectrum file {name} is not there",
                 "put the file back, or amend the measurement's spectrum",
                 grave=known is not None,
             )
-        elif known is not None and file_digest(path) != known:
+        elif known is not None and _changed(path, known):
             yield Problem(
                 about,
-                f"its spectrum file {name} was changed since it was logged",
+                f"its spectrum file {name} was changed since it was logged, or cannot be read",
                 "put the original file back, or log the new spectrum as a refit",
             )
+
+
+def _changed(path: Path, known: str) -> bool:
+    try:
+        return file_digest(path) != known
+    except OSError:
+        return True  # what cannot be read cannot be vouched for
 
 
 def file_digest(path: Path) -> str:

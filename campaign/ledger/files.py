@@ -7,6 +7,7 @@ from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
 from campaign.errors import refused
+from campaign.ledger.database import is_file
 from campaign.ledger.settings import zone
 
 if TYPE_CHECKING:
@@ -52,11 +53,15 @@ def read_files(
 
 
 def _refuse_missing(path: Path) -> None:
-    if path.is_dir():
+    try:
+        folder = path.is_dir()
+    except (OSError, ValueError):
+        folder = False  # no file system takes the name, or lets us look
+    if folder:
         raise refused(
             f"{path} is a folder; name the tables in it", value=path, expected="a CSV or XLSX file"
         )
-    if not path.is_file():
+    if not is_file(path):
         raise refused(
             f"there is no file {path}; check the name and the folder",
             value=path,
@@ -75,20 +80,32 @@ def attach_spectra(rows: Sequence[Any], near: Path, home: Path) -> None:
     A spectrum is named relative to the table (`near`) or to the database (`home`); it is kept
     relative to the database where it lies below it.
     """
-    from campaign.ledger.checking import file_digest
-
     for row in rows:
         name = row.values.get("spectrum")
         if not name:
             continue
         for start in (near, home):
             path = start / name
-            if path.is_file():
+            if is_file(path):
                 resolved = path.resolve()
                 row.values["spectrum"] = (
                     str(resolved.relative_to(home))
                     if resolved.is_relative_to(home)
                     else str(resolved)
                 )
-                row.values["spectrum_sha256"] = file_digest(resolved)
+                row.values["spectrum_sha256"] = _digest(resolved)
                 break
+
+
+def _digest(path: Path) -> str:
+    from campaign.ledger.checking import file_digest
+
+    try:
+        return file_digest(path)
+    except OSError as error:
+        raise refused(
+            f"the spectrum file {path} cannot be read: {error.strerror}",
+            column="spectrum",
+            value=path,
+            expected="a readable file",
+        ) from None

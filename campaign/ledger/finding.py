@@ -16,6 +16,7 @@ if TYPE_CHECKING:
 
 Row = dict[str, Any]
 
+LONGEST_NUMBER = 15  # digits
 KINDS = ("electrode", "electrolyte", "cell", "measurement", "fit")
 
 
@@ -35,6 +36,11 @@ def find_record(connection: Connection, kind: str, name: str) -> Row:
     if kind in ("electrode", "cell"):
         return _labelled(connection, kind, name)
     return _numbered(connection, kind, name)
+
+
+def is_number(name: str) -> bool:
+    """Return whether a name is a record number: ASCII digits, within what a database counts."""
+    return name.isascii() and name.isdigit() and len(name) <= LONGEST_NUMBER
 
 
 def _labelled(connection: Connection, kind: str, name: str) -> Row:
@@ -57,7 +63,7 @@ def _electrolyte(connection: Connection, name: str) -> Row:
     from campaign.ledger.selecting import labels
 
     table = schema.electrolyte
-    if name.isdigit():
+    if is_number(name):
         return _numbered(connection, "electrolyte", name)
     try:
         key = parse_recipe(name, stored_species(connection)).key
@@ -80,7 +86,7 @@ def _electrolyte(connection: Connection, name: str) -> Row:
 
 def _numbered(connection: Connection, kind: str, name: str) -> Row:
     table = schema.metadata.tables[kind]
-    if not name.isdigit() or len(name) > 15:
+    if not is_number(name):
         raise refused(
             f"a {kind} is named by its record number, as 'campaign list {kind}s' shows it; "
             f"'{name}' is not a number",
@@ -137,7 +143,7 @@ def find_ever(connection: Connection, kind: str, name: str | None) -> int:
             raise
         table = schema.metadata.tables[kind]
         past = select(table.c.record).order_by(table.c.id.desc())
-        if name.isdigit():
+        if is_number(name):
             past = past.where(table.c.record == int(name))
         elif kind in ("electrode", "cell"):
             past = past.where(table.c.label == name)

@@ -19,7 +19,9 @@ from dataclasses import dataclass, field
 from datetime import UTC, datetime
 from typing import TYPE_CHECKING, Any
 
+from campaign.errors import Refused
 from campaign.ledger import schema
+from campaign.ledger.fields import clean_text
 
 if TYPE_CHECKING:
     from sqlalchemy import Connection, Table
@@ -71,14 +73,16 @@ def keys(table: Table) -> tuple[str, ...]:
 
 
 def user_name(given: str | None = None) -> str:
-    """Return who is writing: as given, else CAMPAIGN_USER, else the account's name."""
-    if given:
-        return given
-    if os.environ.get("CAMPAIGN_USER"):
-        return os.environ["CAMPAIGN_USER"]
+    """Return who is writing: as given, else CAMPAIGN_USER, else the account's name.
+
+    Raises Refused for a name that cannot be shown.
+    """
+    stated = given or os.environ.get("CAMPAIGN_USER")
+    if stated:
+        return clean_text(stated, "name")
     try:
-        return getpass.getuser()
-    except (OSError, KeyError):
+        return clean_text(getpass.getuser(), "name")
+    except (OSError, KeyError, Refused):
         return "unknown"
 
 
@@ -156,6 +160,8 @@ def writing(
 
     Nothing is written when the body raises, when it makes and ends nothing, or on `dry_run`.
     """
+    name = user_name(who)
+    reason = clean_text(reason, "reason") if reason else None
     with database.writing() as connection:
         pen = Pen(connection)
         yield pen
@@ -163,7 +169,7 @@ def writing(
             return
         for entry in pen.entries:
             if entry:
-                _write(connection, entry, user_name(who), reason)
+                _write(connection, entry, name, reason)
 
 
 def read_head(connection: Connection) -> tuple[int, str] | None:
@@ -189,7 +195,7 @@ def _write(connection: Connection, entry: Entry, who: str, reason: str | None) -
         "subject": entry.subject,
         "before": canonical({**entry.before, **ended_summary(entry.ended)}),
         "after": canonical({**entry.after, **made_summary(entry.made)}),
-        "reason": reason or None,
+        "reason": reason,
         "previous": head[1] if head else FIRST,
     }
     record["hash"] = entry_hash(record)

@@ -63,14 +63,18 @@ def _json_object(source: str, stream: IO[bytes] | None) -> dict[str, object]:
             expected=f"at most {LARGEST} bytes",
         )
     try:
-        stated = json.loads(content.decode("utf-8-sig"), parse_constant=_no_constant)
+        stated = json.loads(
+            content.decode("utf-8-sig"),
+            parse_constant=_no_constant,
+            object_pairs_hook=_each_key_once,
+        )
     except UnicodeDecodeError:
         raise refused(
             "it is not UTF-8 text", file="standard input", expected="a JSON object"
         ) from None
-    except (json.JSONDecodeError, RecursionError) as error:
+    except (ValueError, RecursionError) as error:
         line = getattr(error, "lineno", 1)
-        what = getattr(error, "msg", "it is nested too deeply")
+        what = getattr(error, "msg", "it is nested too deeply, or a number in it is too long")
         raise refused(
             f"it is not JSON: {what}",
             file="standard input",
@@ -83,6 +87,21 @@ def _json_object(source: str, stream: IO[bytes] | None) -> dict[str, object]:
             file="standard input",
             expected='an object such as {"cell": "C07", "R_ct": 41.2}',
         )
+    return stated
+
+
+def _each_key_once(pairs: list[tuple[str, object]]) -> dict[str, object]:
+    stated: dict[str, object] = {}
+    for name, value in pairs:
+        if name in stated:
+            raise refused(
+                f"it states {name[:40]} twice",
+                file="standard input",
+                column=name[:80],
+                value=value,
+                expected="each key once",
+            )
+        stated[name] = value
     return stated
 
 

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import errno
 from pathlib import Path
 
 from campaign.errors import refused
@@ -32,6 +33,15 @@ def start(given: str | None, zone: str = "UTC", who: str | None = None) -> Place
 
 
 def _refuse_taken(path: Path) -> None:
+    try:
+        path.stat()
+    except OSError as error:
+        if error.errno not in (errno.ENOENT, errno.ENOTDIR):
+            raise refused(
+                f"no campaign can be kept at {path}: {error.strerror}",
+                value=path,
+                expected="a file that does not exist yet",
+            ) from None
     if path.is_dir():
         raise refused(
             f"{path} is a folder; name a file, such as {path / 'campaign.sqlite'}",

@@ -144,7 +144,7 @@ class RowReader:
 
     def _number(self, name: str, given: Any, *, uncertain: bool) -> tuple[float, float | None]:
         if isinstance(given, (int, float)) and not isinstance(given, bool):
-            return float(given), None
+            return self._as_float(name, given), None
         try:
             number, error = with_uncertainty(as_point(str(given), self.decimal))
         except (ValueError, OverflowError):
@@ -156,6 +156,14 @@ class RowReader:
                 "a plain number",
             )
         return number, error
+
+    def _as_float(self, name: str, given: float) -> float:
+        try:
+            return float(given)
+        except OverflowError:
+            raise ValueFault(
+                f"{name} is {str(given)[:20]}..., which is out of range", self._expected(name)
+            ) from None
 
     def _not_a_number(self, name: str, given: Any) -> str:
         other = "," if self.decimal == "." else "."
