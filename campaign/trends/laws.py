@@ -26,10 +26,13 @@ from campaign.statistics.information import aicc
 from campaign.statistics.mixed import MixedFit, NoContrast, fit_mixed
 from campaign.trends.results import Interval
 from campaign.trends.sample import Sample
-from campaign.trends.strata import centred, combine
+from campaign.trends.strata import centred, combine, means
 
 LEAST_DIFFERENCE = 2.0
 """Laws whose AICc differs by less cannot be told apart (common practice, no source)."""
+
+MANY_READINGS = 5000
+"""More readings are first averaged at each potential of each specimen and temperature."""
 
 VARIANCES = 2
 _INTERACTIONS = (-3.0, -1.0, 0.0, 2.0, 5.0, 12.0)
@@ -102,9 +105,15 @@ class _Curves:
 
 def _curves(s: Sample) -> _Curves:
     block = combine(s.c.specimen, s.c.cell, s.c.temperature)
-    pairs, where = np.unique(np.stack([s.c.x_V, s.c.temperature_K]), axis=1, return_inverse=True)
+    y, x_V, T, specimen = s.y, s.c.x_V, s.c.temperature_K, combine(s.c.specimen)
+    if len(s) > MANY_READINGS:
+        point = combine(block, s.c.fixed)
+        first = np.unique(point, return_index=True)[1]
+        y, x_V, T = means(y, point), means(x_V, point), means(T, point)
+        block, specimen = block[first], specimen[first]
+    pairs, where = np.unique(np.stack([x_V, T]), axis=1, return_inverse=True)
     return _Curves(
-        centred(s.y, block), centred(s.c.x_V, block), s.c.x_V, block, combine(s.c.specimen),
+        centred(y, block), centred(x_V, block), x_V, block, specimen,
         max(1, abs(s.c.facts.charge)), s.n_specimens, pairs, where.reshape(-1).astype(np.int64),
     )  # fmt: skip
 
