@@ -93,6 +93,9 @@ def order(
 
     Raises NoContrast with a reason where no stratum holds two concentrations.
     """
+    with np.errstate(invalid="ignore"):
+        unknown = ~(s.c.concentration > 0)
+    s = s.leaving(unknown, "no concentration recorded")
     s, x = in_activity(s) if activity else (s, np.log(s.c.concentration))
     if not len(s):
         raise NoContrast(f"no readings with {s.response}")

@@ -127,7 +127,8 @@ def choose(s: Sample, alpha: float) -> Law:
         line = curves.fit(curves.y, [curves.x], "ML")
     except NoContrast:
         return Law("open", warnings=("the law over potential cannot be told from these readings",))
-    valley = _valley(curves) if n_levels > 2 else None
+    known = bool(np.isfinite(s.c.temperature_K).all())
+    valley = _valley(curves) if n_levels > 2 and known else None
     scores = {
         "flat": aicc(flat.loglik, VARIANCES, curves.n_specimens),
         "exponential": aicc(line.loglik, VARIANCES + 1, curves.n_specimens),

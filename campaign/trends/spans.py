@@ -61,7 +61,10 @@ def span(s: Sample, criteria: Criteria) -> tuple[Sample, Span]:
         raise NoContrast("no specimen was measured at two potentials under equal conditions")
     s = s.leaving(alone, "cells without contrast in potential")
     inside = combine(inside[~alone])
-    parts = [_of_scale(s, s.c.scale == code, criteria) for code in np.unique(s.c.scale)]
+    every = [_of_scale(s, s.c.scale == code, criteria) for code in np.unique(s.c.scale)]
+    parts = [part for part in every if part is not None]
+    if not parts:
+        raise NoContrast("the potentials lie too close together to be compared")
     confounders = confounding.within_cells(s, s.c.x_V, inside, criteria)
     widest = max(parts, key=lambda part: part.window_V)
     return s, Span(
@@ -97,7 +100,7 @@ class _Part:
     warnings: tuple[str, ...]
 
 
-def _of_scale(s: Sample, rows: BoolArray, criteria: Criteria) -> _Part:
+def _of_scale(s: Sample, rows: BoolArray, criteria: Criteria) -> _Part | None:
     part = s.take(np.flatnonzero(rows))
     level, centres = group_levels(part.c.x_V, criteria.potential_tolerance_V)
     own = _paired(part, level, len(centres))
@@ -107,6 +110,8 @@ def _of_scale(s: Sample, rows: BoolArray, criteria: Criteria) -> _Part:
     scale = part.c.name("scale", int(part.c.scale[0])) if several else ""
     names = [f"{centre:.4g} V {scale}".rstrip() for centre in centres]
     pairs = [(b, a) for b in range(len(centres)) for a in range(b) if count[b, a] >= least]
+    if not pairs:
+        return None
     estimates = {(b, a): _mean(own[:, b, a]) for b, a in pairs}
     widest = max(pairs, key=lambda pair: float(centres[pair[0]] - centres[pair[1]]))
     largest = max(pairs, key=lambda pair: abs(estimates[pair].value))
@@ -197,6 +202,8 @@ def _adjusted(
     if corrected is None:
         return Adjusted(confounder.name, math.nan, None)
     part = _of_scale(corrected, s.c.scale == s.c.scale[0], criteria)
+    if part is None:
+        return Adjusted(confounder.name, math.nan, None)
     largest = max(part.contrasts, key=lambda c: abs(c.estimate.value)).estimate
     interval = largest.interval(1.0 - criteria.error_probability)
     if interval is not None and largest.value < 0:
