@@ -11,6 +11,7 @@ from campaign.cli import (
     add,
     amend,
     check,
+    criteria,
     demo,
     explain,
     history,
@@ -24,7 +25,10 @@ from campaign.cli import (
     trend,
     withdraw,
 )
-from campaign.errors import Refused
+from campaign.errors import Fault, Refused, refused
+
+WRONG_USAGE = 2
+AS_JSON = "--json"
 
 app = typer.Typer(
     name="campaign",
@@ -63,6 +67,7 @@ app.command("log", rich_help_panel=RECORD)(log.log)
 app.command("import", rich_help_panel=RECORD)(imports.import_tables)
 app.command("amend", rich_help_panel=CORRECT)(amend.amend)
 app.command("withdraw", rich_help_panel=CORRECT)(withdraw.withdraw)
+app.command("criteria", rich_help_panel=CORRECT)(criteria.criteria)
 app.command("list", rich_help_panel=ASK)(listing.list_records)
 app.command("show", rich_help_panel=ASK)(show.show)
 app.command("history", rich_help_panel=ASK)(history.history)
@@ -74,17 +79,52 @@ app.command("explain", rich_help_panel=ANSWER)(explain.explain)
 
 def main() -> None:
     """Run the command line; exit 0 done, 1 refused (nothing written), 2 wrong usage."""
+    for stream in (sys.stdout, sys.stderr):
+        # A terminal of another encoding gets \xb1 for what it cannot show, not a failure.
+        stream.reconfigure(errors="backslashreplace")  # type: ignore[union-attr]
+    try:
+        _run()
+    except BrokenPipeError:
+        # The reader (head, less) has left; say nothing and leave no second error behind.
+        _silence_output()
+        sys.exit(0)
+    except OSError as error:
+        _silence_output()
+        where = f"{error.filename}: " if error.filename else ""
+        _refuse(refused(f"{where}{error.strerror or error}", value=error.filename))
+
+
+def _run() -> None:
     try:
         app(prog_name="campaign")
     except Refused as error:
-        from campaign.present.refusals import show_refusal
+        _refuse(error)
+    except SystemExit as stop:
+        sys.stdout.flush()
+        if stop.code == WRONG_USAGE and AS_JSON in sys.argv:
+            _show_usage_as_json(stop.__context__)
+        raise
 
-        show_refusal(error, as_json="--json" in sys.argv)
-        sys.exit(1)
-    except BrokenPipeError:
-        # The reader (head, less) has left; say nothing and leave no second error behind.
-        os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
-        sys.exit(0)
+
+def _refuse(error: Refused) -> None:
+    from campaign.present.refusals import show_refusal
+
+    show_refusal(error, as_json=AS_JSON in sys.argv)
+    sys.exit(1)
+
+
+def _show_usage_as_json(cause: BaseException | None) -> None:
+    """Print as JSON, too, what Typer has said about the command line on standard error."""
+    from campaign.present.tables import show_json
+
+    say = getattr(cause, "format_message", None)
+    message = say() if say else "the command line is not understood"
+    fault = Fault(message, expected="what 'campaign COMMAND --help' shows")
+    show_json({"errors": [fault.as_dict()]})
+
+
+def _silence_output() -> None:
+    os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
 
 
 if __name__ == "__main__":

@@ -8,7 +8,15 @@ from typing import TYPE_CHECKING, Any
 from campaign.errors import RecipeError, refused
 from campaign.ledger import schema
 from campaign.ledger.book import Book
-from campaign.ledger.fields import ELECTRODE, ELECTROLYTE, ZERO_C, Field, clean_text, read_value
+from campaign.ledger.fields import (
+    ELECTRODE,
+    ELECTROLYTE,
+    ZERO_C,
+    Field,
+    clean_text,
+    read_value,
+    refuse_disorder,
+)
 from campaign.ledger.finding import find_record
 from campaign.ledger.journal import writing
 
@@ -16,6 +24,8 @@ if TYPE_CHECKING:
     from campaign.ledger.database import Database
 
 Row = dict[str, Any]
+
+HIGHEST_V = 100.0  # no electrode is polarised further
 
 
 def add_electrode(
@@ -44,9 +54,9 @@ def add_electrode(
                 values[field.column] = find_record(pen.connection, "electrolyte", text)["record"]
             else:
                 values[field.column] = read_value(field, text)
-        _refuse_half_window(values)
+        refuse_disorder("electrode", values)
         entry = pen.entry("add", f"electrode {values['label']}")
-        book.make_electrode(entry, values, [_plateau(text, values) for text in plateaus])
+        book.make_electrode(entry, values, _plateaus(plateaus, values))
     return str(values["label"])
 
 
@@ -60,14 +70,17 @@ def _taken(kind: str, label: str) -> Exception:
     )
 
 
-def _refuse_half_window(values: Row) -> None:
-    has_window = values.get("window_low_V") is not None or values.get("window_high_V") is not None
-    if has_window and not values.get("window_reference"):
-        raise refused(
-            "a potential window needs its scale; give --window-reference, such as Na/Na+",
-            column="window_reference",
-            expected="a reference electrode",
-        )
+def _plateaus(texts: Sequence[str], values: Row) -> list[Row]:
+    found = [_plateau(text, values) for text in texts]
+    for place, (text, item) in enumerate(zip(texts, found, strict=True)):
+        if any(item["low_V"] == earlier["low_V"] for earlier in found[:place]):
+            raise refused(
+                f"the plateau '{text}' begins where another one begins; give each once",
+                column="plateau",
+                value=text,
+                expected="plateaus that begin at different potentials",
+            )
+    return found
 
 
 def _plateau(text: str, values: Row) -> Row:
@@ -77,7 +90,7 @@ def _plateau(text: str, values: Row) -> Row:
     parts = text.split(":", 2)
     try:
         low, high = float(parts[0]), float(parts[1])
-        if not low < high:
+        if not -HIGHEST_V <= low < high <= HIGHEST_V:
             raise ValueError
     except (ValueError, IndexError):
         raise refused(
@@ -128,9 +141,26 @@ def add_electrolyte(
             *(_at_temperature(item, "conductivity_S_cm", 1e-3) for item in conductivity),
             *(_at_temperature(item, "activity_coefficient", 1.0) for item in activity),
         ]
+        refuse_disorder("electrolyte", values)
+        _refuse_twice(properties)
         entry = pen.entry("add", f"electrolyte {recipe.key}")
         book.make_electrolyte(entry, recipe, text, values, properties)
     return recipe.key, recipe.warnings
+
+
+def _refuse_twice(properties: Sequence[Row]) -> None:
+    seen: set[tuple[str, float]] = set()
+    for item in properties:
+        key = (item["property"], item["temperature_K"])
+        if key in seen:
+            raise refused(
+                f"the {item['property'].split('_')[0]} at {key[1] - ZERO_C:g} degC is given twice; "
+                "give it once",
+                column=item["property"],
+                value=f"{key[1] - ZERO_C:g}",
+                expected="one value a temperature",
+            )
+        seen.add(key)
 
 
 _POSITIVE = Field("value", "value", "number", low=0, above=True)
@@ -181,6 +211,32 @@ def add_cell(database: Database, stated: Mapping[str, str | None], who: str | No
     return str(values["label"])
 
 
+def _refuse_unread_cation(cation: str | None) -> None:
+    from campaign.chemistry.ions import parse_ion
+
+    if cation is not None:
+        parse_ion(cation)
+
+
+def _species_name(name: str) -> str:
+    """Return a species' name after checking that a recipe can spell it."""
+    from campaign.chemistry.recipes import solvent_key_of
+
+    label = clean_text(name, "name")
+    try:
+        read = solvent_key_of(label)
+    except RecipeError as error:
+        read = str(error)
+    if label not in read:
+        raise refused(
+            f"a recipe cannot name a species '{label}'; write letters, digits and hyphens",
+            column="name",
+            value=label,
+            expected="a name such as HFE-7 or NaBOB",
+        )
+    return label
+
+
 def add_species(
     database: Database, name: str, classes: Sequence[str], stated: Row, who: str | None = None
 ) -> str:
@@ -195,8 +251,12 @@ def add_species(
             value=wrong[0] if wrong else None,
             expected=", ".join(known),
         )
+    for key in ("formula", "cation", "caution", "source"):
+        if stated.get(key) is not None:
+            stated[key] = clean_text(str(stated[key]), key)
+    _refuse_unread_cation(stated.get("cation"))
     with writing(database, who=who) as pen:
-        label = clean_text(name, "name")
+        label = _species_name(name)
         book = Book.read(pen)
         if any(item.name == label for item in book.species):
             raise _taken("species", label)

@@ -9,7 +9,7 @@ from sqlalchemy import select
 
 from campaign.errors import refused
 from campaign.ledger import schema
-from campaign.ledger.fields import Field, field_of, read_value
+from campaign.ledger.fields import Field, field_of, read_value, refuse_disorder
 from campaign.ledger.finding import describe, find_record
 from campaign.ledger.journal import Entry, Pen, writing
 from campaign.ledger.settings import in_force, zone
@@ -21,6 +21,7 @@ if TYPE_CHECKING:
     from campaign.ledger.database import Database
 
 Row = dict[str, Any]
+
 
 def amend(
     database: Database,
@@ -46,6 +47,7 @@ def amend(
                 f"nothing would change: {kind} {name} reads so already",
                 expected="a field with another value",
             )
+        refuse_disorder(kind, successor)
         entry.before["was"] = {field: before for field, (before, _) in changed.items()}
         entry.after["is"] = {field: after for field, (_, after) in changed.items()}
         _replace(pen, entry, kind, row, successor, parts)

@@ -172,6 +172,38 @@ def field_of(kind: str, name: str) -> Field:
     )
 
 
+# Pairs of stored columns of which the first must lie below the second.
+_ORDERED = (
+    ("window_low_V", "window_high_V"),
+    ("f_min_Hz", "f_max_Hz"),
+    ("minimum_temperature_K", "maximum_temperature_K"),
+)
+
+
+def refuse_disorder(kind: str, stored: Mapping[str, Any]) -> None:
+    """Raise Refused where the stored values of a record contradict each other."""
+    written = {field.column: field for field in KINDS[kind]}
+    for low, high in _ORDERED:
+        below, above = stored.get(low), stored.get(high)
+        if below is None or above is None or below < above:
+            continue
+        field, other = written[low], written[high]
+        raise refused(
+            f"{field.name} ({field.written(below):g}) is not below {other.name} "
+            f"({other.written(above):g}); mend one of the two",
+            column=field.name,
+            value=field.written(below),
+            expected=f"a {field.name} below {other.name}",
+        )
+    windowed = any(stored.get(name) is not None for name in _ORDERED[0])
+    if windowed and not stored.get("window_reference"):
+        raise refused(
+            "a potential window needs its scale; give window_reference, such as Na/Na+",
+            column="window_reference",
+            expected="a reference electrode",
+        )
+
+
 def _bad(field: Field, text: object, why: str) -> Exception:
     return refused(
         f"{field.name} is {text!r}, {why}; write {field.expected}",
@@ -184,6 +216,8 @@ def _bad(field: Field, text: object, why: str) -> Exception:
 def _as_number(field: Field, text: object) -> float:
     try:
         number = float(str(text).strip())
+        if "_" in str(text):  # a number in program code, a slip anywhere else
+            raise ValueError
     except ValueError:
         raise _bad(field, text, "which is not a number") from None
     if not math.isfinite(number):
@@ -191,7 +225,10 @@ def _as_number(field: Field, text: object) -> float:
     too_low = number <= field.low if field.above else number < field.low
     if too_low or number > field.high:
         raise _bad(field, text, "which is out of range")
-    return number * field.factor + field.offset
+    stored = number * field.factor + field.offset
+    if field.above and field.low == 0 and stored <= 0:
+        raise _bad(field, text, "which is too small to be kept")
+    return stored
 
 
 def _as_integer(field: Field, text: object) -> int:

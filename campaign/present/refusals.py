@@ -16,7 +16,7 @@ def show_refusal(error: Refused, as_json: bool) -> None:
 
         show_json({"errors": [fault.as_dict() for fault in error.faults]})
     for fault in error.faults[:MOST]:
-        print(f"campaign: {fault.sentence()}", file=sys.stderr)
+        print(f"campaign: {visible(fault.sentence())}", file=sys.stderr)
     left = len(error.faults) - MOST
     if left > 0:
         print(f"campaign: and {left} more of the kind; all are in --json", file=sys.stderr)
@@ -24,4 +24,9 @@ def show_refusal(error: Refused, as_json: bool) -> None:
 
 def note(message: str) -> None:
     """Print a remark for a person on standard error."""
-    print(message, file=sys.stderr)
+    print(visible(message), file=sys.stderr)
+
+
+def visible(text: str) -> str:
+    """Return text in which characters that steer a terminal are spelt out."""
+    return "".join(c if c.isprintable() else f"\\u{ord(c):04x}" for c in text)

@@ -106,7 +106,14 @@ def clean(value: Any) -> Any:
         return clean(value.tolist())
     if isinstance(value, float) and not math.isfinite(value):
         return None
+    if isinstance(value, str) and not value.isascii():
+        return printable(value)
     return value
+
+
+def printable(text: str) -> str:
+    """Return text without what UTF-8 cannot hold (parts of a surrogate pair)."""
+    return text.encode(errors="backslashreplace").decode()
 
 
 def show_json(content: object) -> None:
