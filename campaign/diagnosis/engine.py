@@ -140,15 +140,43 @@ def _hold(prediction: Prediction, evidence: Evidence, alpha: float, strict: floa
         confirmed,
         against,
         bool(testable),
-        prediction.required and beaten and _all_against(prediction, testable, evidence, strict),
+        prediction.required and beaten and _falls(prediction, evidence, alpha, strict),
     )
 
 
-def _all_against(
-    prediction: Prediction, testable: Sequence[str], evidence: Evidence, alpha: float
+def _falls(prediction: Prediction, evidence: Evidence, alpha: float, strict: float) -> bool:
+    """Return whether a requirement is decisively contradicted in all its testable parts."""
+    tested = False
+    for axis in prediction.axes:
+        finding = evidence.get(axis)
+        if finding is None or not is_testable(finding):
+            continue
+        tested = True
+        for level in (strict, alpha):
+            if finding.decision(level) in ("open", prediction.outcome):
+                return False
+    return tested
+
+
+def stands(
+    step: Step, evidence: Evidence, absent: AbstractSet[str] = frozenset(), alpha: float = 0.05
 ) -> bool:
-    return all(
-        evidence[axis].decision(alpha) not in ("open", prediction.outcome) for axis in testable
+    """Return whether a step is not eliminated, looking at no more findings than it takes."""
+    if step.needs_arc and step.needs_arc in absent:
+        return False
+    strict = alpha / max(1, len(step.required))
+    return not any(_falls(one, evidence, alpha, strict) for one in step.required)
+
+
+def told_apart(step: Step, steps: Sequence[Step], evidence: Evidence, alpha: float) -> bool:
+    """Return whether a prediction came true on which not all `steps` predict the same."""
+    predictions = sorted(step.predictions, key=lambda one: not one.required)
+    return any(
+        not _shared(axis, one.outcome, steps)
+        and is_testable(evidence.get(axis))
+        and evidence[axis].decision(alpha) == one.outcome
+        for one in predictions
+        for axis in one.axes
     )
 
 

@@ -8,6 +8,7 @@ from typing import Any, Final
 
 from campaign.diagnosis.budget import RESPONSE_OF, TERMS, Budget, budgets
 from campaign.diagnosis.engine import Assessment
+from campaign.diagnosis.lazy import trend_evidence
 from campaign.diagnosis.robustness import Robustness, robustness
 from campaign.diagnosis.signatures import AXES, Prediction
 from campaign.diagnosis.summary import (
@@ -20,7 +21,6 @@ from campaign.diagnosis.summary import (
     judge_term,
     of_electrode,
     to_row,
-    trend_evidence,
 )
 from campaign.diagnosis.verdict import Judged, judge
 from campaign.diagnosis.wording import is_testable, listed

@@ -11,8 +11,17 @@ import numpy as np
 from campaign.diagnosis.assignment import Check, assignment_checks, failed
 from campaign.diagnosis.budget import RESPONSE_OF, TERMS, Budget, Crossing, budget, crossings
 from campaign.diagnosis.engine import Assessment, Evidence, assess
+from campaign.diagnosis.lazy import trend_evidence
 from campaign.diagnosis.signatures import AXES, candidates
-from campaign.diagnosis.verdict import Judged, Verdict, agree, confounded_axes, judge, limit
+from campaign.diagnosis.verdict import (
+    Judged,
+    Verdict,
+    agree,
+    confounded_axes,
+    judge,
+    limit,
+    word_alone,
+)
 from campaign.diagnosis.wording import (
     Decider,
     contrast_interval,
@@ -103,15 +112,6 @@ def diagnose(
     ]
 
 
-def trend_evidence(
-    snapshot: Snapshot, criteria: Criteria, electrode: str, response: str
-) -> Mapping[str, Decider]:
-    """Return the findings of the trends on one response of one electrode, by axis."""
-    from campaign.trends.evidence import findings
-
-    return findings(snapshot, criteria, electrode, response)
-
-
 def of_electrode(snapshot: Snapshot, electrode: str) -> Snapshot:
     """Return the snapshot with one electrode's readings only."""
     return keep(snapshot, snapshot.readings.electrode == electrode)
@@ -178,6 +178,31 @@ def settle(
     return Outcome(weighed, judged, agree(verdicts))
 
 
+def settle_word(
+    snapshot: Snapshot,
+    criteria: Criteria,
+    electrode: str,
+    source: EvidenceSource,
+    terms: Sequence[str] = TERMS,
+) -> str:
+    """Return the word of `settle` alone, with no more findings estimated than it takes."""
+    readings = snapshot.readings
+    weighed = budget(readings, criteria, snapshot.electrodes.get(electrode), terms=terms)
+    if weighed is None:
+        return "undetermined"
+    gone = absent_responses(readings, weighed)
+    first = ""
+    for term in (weighed.dominant, *weighed.rivals):
+        response = RESPONSE_OF[term]
+        found = source(snapshot, criteria, electrode, response)
+        word = word_alone(response, found, absent=gone, alpha=criteria.error_probability)
+        without_control = word in ("undetermined", "conflicting")
+        if (first and word != first) or (weighed.rivals and without_control):
+            return "undetermined"
+        first = word
+    return first
+
+
 def judge_term(
     snapshot: Snapshot,
     criteria: Criteria,
@@ -227,7 +252,7 @@ def _diagnose(
 
     def without(specimen: str) -> str:
         part = keep(snapshot, readings.specimen != specimen)
-        return settle(part, criteria, electrode, source, terms).verdict.word
+        return settle_word(part, criteria, electrode, source, terms)
 
     alpha = criteria.error_probability
     confounded = _unique(
@@ -251,7 +276,7 @@ def _diagnose(
         share=weighed.share if weighed else None,
         budget=weighed,
         crossings=crossings(readings, weighed.condition, facts, terms) if weighed else (),
-        evidence=dominant.evidence if dominant else {},
+        evidence=dict(dominant.evidence) if dominant else {},
         candidates=dominant.assessments if dominant else (),
         verdict=replace(verdict, missing=(*verdict.missing, *_cell_limited(weighed))),
         checks=checks,

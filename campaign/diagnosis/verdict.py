@@ -3,11 +3,12 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Iterable, Mapping, Sequence
+from collections.abc import Set as AbstractSet
 from dataclasses import dataclass, replace
 from typing import Final, Literal
 
-from campaign.diagnosis.engine import Assessment, Evidence
-from campaign.diagnosis.signatures import CONTRADICTIONS, UNEXPLAINED, WANTED
+from campaign.diagnosis.engine import Assessment, Evidence, stands, told_apart
+from campaign.diagnosis.signatures import CONTRADICTIONS, UNEXPLAINED, WANTED, candidates
 from campaign.diagnosis.wording import is_testable, listed, numbers, why_open
 
 Word = Literal["ion transport", "electron transfer", "host", "mixed", "conflicting", "undetermined"]
@@ -84,6 +85,28 @@ def judge(judged: Judged, alpha: float = 0.05) -> Verdict:
         ),
         missing=_missing(judged, survivors, alpha),
     )
+
+
+def word_alone(
+    response: str,
+    evidence: Evidence,
+    *,
+    absent: AbstractSet[str] = frozenset(),
+    alpha: float = 0.05,
+) -> Word:
+    """Return the word `judge` gives, looking at no more findings than it takes."""
+    steps = candidates(response)
+    survivors = [one for one in steps if stands(one, evidence, absent, alpha)]
+    if not steps:
+        return "undetermined"
+    if not survivors:
+        return "conflicting"
+    controls = {one.control for one in survivors}
+    if len(controls) > 1 and controls != {"ion transport", "mixed"}:
+        return "undetermined"
+    if not any(told_apart(one, steps, evidence, alpha) for one in survivors):
+        return "undetermined"
+    return survivors[0].control if len(controls) == 1 else "ion transport"
 
 
 def _merit(one: Assessment) -> tuple[int, int]:
