@@ -26,6 +26,6 @@ def estimate(
     return estimate_pairs(ADDITIVE, snapshot, criteria, response, porous, scale)
 
 
-def fit(s: Sample, criteria: Criteria) -> PairsFit:
+def fit(s: Sample, criteria: Criteria, by_cell: bool = False) -> PairsFit:
     """Compare the additives of one sample. Raises NoContrast."""
-    return compare(s, criteria, ADDITIVE)
+    return compare(s, criteria, ADDITIVE, by_cell)

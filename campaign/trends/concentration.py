@@ -88,9 +88,11 @@ def order(
     held: Sequence[str] = SERIES,
     activity: bool = False,
     age_adjusted: bool = False,
+    by_cell: bool = False,
 ) -> OrderFit:
     """Fit the common order within strata of temperature, state and the `held` columns.
 
+    by_cell: see `between.fit`.
     Raises NoContrast with a reason where no stratum holds two concentrations.
     """
     with np.errstate(invalid="ignore"):
@@ -110,8 +112,8 @@ def order(
     x, level, stratum = x[~keep], combine(level[~keep]), combine(stratum[~keep])
     concentrations = levels.medians(s.c.concentration, level)
     group = combine(*(getattr(s.c, name) for name in held)) if held else np.zeros_like(level)
-    fitted = between.fit(s, x[:, None], stratum)
-    parts = _Parts(x, level, concentrations, stratum, group, tuple(held))
+    fitted = between.fit(s, x[:, None], stratum, by_cell)
+    parts = _Parts(x, level, concentrations, stratum, group, tuple(held), by_cell)
     result = _judge(s, fitted, parts, criteria)
     if result.adjusted is None and age_adjusted:
         held_too = confounding.requested(s)
@@ -130,6 +132,7 @@ class _Parts:
     stratum: IntArray
     group: IntArray
     held: tuple[str, ...]
+    by_cell: bool
 
 
 def _judge(s: Sample, fitted: BetweenFit, p: _Parts, criteria: Criteria) -> OrderFit:
@@ -166,7 +169,7 @@ def _negative(e: Estimate) -> Estimate:
 def _levels(s: Sample, p: _Parts) -> tuple[tuple[Contrast, ...], float | None]:
     """Return level-to-level differences of ln R and the p value of lack of fit."""
     names = [f"{value:.6g}" for value in p.concentrations]
-    fitted = levels.fit_levels(s, p.level, p.stratum)
+    fitted = levels.fit_levels(s, p.level, p.stratum, by_cell=p.by_cell)
     contrasts = levels.all_pairs(fitted, names)
     medians_of_x = levels.medians(p.x, p.level)
     return contrasts, heterogeneity.lack_of_fit(fitted, contrasts, medians_of_x)

@@ -62,15 +62,15 @@ def _finding(whole: Sample, criteria: Criteria, axis: Axis) -> Finding:
 
 
 def _concentration(s: Sample, criteria: Criteria) -> Finding:
-    return attempt(s, lambda part: concentration.order(part, criteria)).finding
+    return attempt(s, lambda part: concentration.order(part, criteria, by_cell=True)).finding
 
 
 def _solvent(s: Sample, criteria: Criteria) -> Finding:
-    return attempt(s, lambda part: solvent.fit(part, criteria)).finding
+    return attempt(s, lambda part: solvent.fit(part, criteria, by_cell=True)).finding
 
 
 def _additive(s: Sample, criteria: Criteria) -> Finding:
-    return attempt(s, lambda part: additive.fit(part, criteria)).finding
+    return attempt(s, lambda part: additive.fit(part, criteria, by_cell=True)).finding
 
 
 def _potential(s: Sample, criteria: Criteria) -> Finding:

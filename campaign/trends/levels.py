@@ -46,11 +46,15 @@ class LevelFit:
 
 
 def fit_levels(
-    s: Sample, level: IntArray, stratum: IntArray, covariates: FloatArray | None = None
+    s: Sample,
+    level: IntArray,
+    stratum: IntArray,
+    covariates: FloatArray | None = None,
+    by_cell: bool = False,
 ) -> LevelFit:
     """Fit one effect a level (codes 0..k-1) within strata. Raises NoContrast.
 
-    covariates (n, q): further columns held, such as the age.
+    covariates (n, q): further columns held, such as the age. by_cell: see `between.fit`.
     """
     n_levels = int(level.max()) + 1
     groups = components(
@@ -64,7 +68,7 @@ def fit_levels(
     X = (level[:, None] == np.asarray(free, np.int64)[None, :]).astype(np.float64)
     if covariates is not None:
         X = np.hstack([X, covariates])
-    fitted = between.fit(s, X, stratum)
+    fitted = between.fit(s, X, stratum, by_cell)
     return LevelFit(fitted, position, tuple(tuple(g) for g in groups), X.shape[1])
 
 

@@ -110,9 +110,10 @@ def estimate(
     return AxisResult(how.axis, response, unit(response), tuple(found), left_out=tuple(left))
 
 
-def compare(s: Sample, criteria: Criteria, how: Comparison) -> PairsFit:
+def compare(s: Sample, criteria: Criteria, how: Comparison, by_cell: bool = False) -> PairsFit:
     """Compare the levels of a recipe column within strata of everything else.
 
+    by_cell: see `between.fit`.
     Raises NoContrast with a reason where no stratum holds two levels.
     """
     if not len(s):
@@ -129,7 +130,7 @@ def compare(s: Sample, criteria: Criteria, how: Comparison) -> PairsFit:
     stratum, held = combine(stratum[~lone]), combine(held[~lone])
     codes = np.unique(level[~lone])
     names = [s.c.name(how.column, int(code)) for code in codes]
-    parts = _Parts(np.searchsorted(codes, level[~lone]), stratum, held, names)
+    parts = _Parts(np.searchsorted(codes, level[~lone]), stratum, held, names, by_cell)
     return _judge(s, parts, criteria, how)
 
 
@@ -141,6 +142,7 @@ class _Parts:
     stratum: IntArray
     held: IntArray
     names: list[str]
+    by_cell: bool
 
 
 def _held(s: Sample, how: Comparison) -> IntArray:
@@ -149,7 +151,7 @@ def _held(s: Sample, how: Comparison) -> IntArray:
 
 
 def _judge(s: Sample, p: _Parts, criteria: Criteria, how: Comparison) -> PairsFit:
-    fitted = levels.fit_levels(s, p.level, p.stratum)
+    fitted = levels.fit_levels(s, p.level, p.stratum, by_cell=p.by_cell)
     contrasts, family, count = _contrasts(fitted, p.names, how)
     warnings = list(s.warnings)
     if s.n_specimens == 1:

@@ -49,9 +49,9 @@ def estimate(
     return replace(result, donor=tuple(found), warnings=(*result.warnings, *warnings))
 
 
-def fit(s: Sample, criteria: Criteria) -> PairsFit:
+def fit(s: Sample, criteria: Criteria, by_cell: bool = False) -> PairsFit:
     """Compare the solvents of one sample. Raises NoContrast."""
-    return compare(s, criteria, SOLVENT)
+    return compare(s, criteria, SOLVENT, by_cell)
 
 
 def donor_numbers(names: tuple[str, ...]) -> dict[str, float]:

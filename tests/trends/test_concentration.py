@@ -12,6 +12,7 @@ from campaign.ledger.criteria import Criteria
 from campaign.ledger.readings import ElectrolyteFacts
 from campaign.trends import concentration
 from campaign.trends.bases import molar
+from campaign.trends.sample import comparable, draw, source
 
 KEYS = {
     "electrode", "salt", "solvents", "additives", "order", "order_ci", "df", "n_specimens",
@@ -286,3 +287,18 @@ def test_clean_campaigns_seldom_show_an_outlier():
         rows = simulate(np.random.default_rng(seed), cells=2, repeats=1)
         shown += bool(orders(rows).estimates[0].outliers)
     assert shown <= 14  # 60 campaigns, 10 %: more than 14 has a chance below 0.1 %
+
+
+@pytest.mark.parametrize(("missing", "share"), [(0.0, 1e-6), (0.3, 0.1)])
+def test_one_effect_a_cell_says_the_same_as_all_readings(missing, share):
+    """The same in a complete campaign; within a tenth of the standard error in one with gaps."""
+    rng = np.random.default_rng(31)
+    rows = [row for row in simulate(rng, cells=2) if rng.random() >= missing]
+    campaign = snapshot(rows)
+    s = comparable(draw(campaign, source(campaign, Criteria(), "film"), "R_ct"))
+    plain, quick = (
+        concentration.order(s, Criteria(), by_cell=by_cell).finding for by_cell in (False, True)
+    )
+    assert abs(quick.slope.value - plain.slope.value) <= share * plain.slope.se
+    assert quick.slope.se == pytest.approx(plain.slope.se, rel=max(share, 1e-4))
+    assert quick.slope.df == pytest.approx(plain.slope.df, rel=0.01)
