@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import re
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from datetime import UTC, datetime, timedelta, timezone
 from functools import lru_cache
 from zoneinfo import ZoneInfo, ZoneInfoNotFoundError
@@ -15,8 +15,13 @@ EARLIEST, LATEST = 1900, 2200
 
 _FORM = re.compile(
     r"(\d{4})-(\d{1,2})-(\d{1,2})"
-    r"(?:[T ]\s*(\d{1,2}):(\d{2})(?::(\d{2})(?:[.,](\d{1,9}))?)?\s*(Z|z|[+-]\d{2}:?\d{2})?)?",
+    r"(?:[Tt ]\s*(\d{1,2}):(\d{2})(?::(\d{2})(?:[.,](\d{1,9}))?)?"
+    r"\s*(Z|z|[+-]\d{2}(?::?\d{2})?)?)?",
     re.ASCII,
+)
+# The usual form with an offset, which the C reader of datetime takes as it is.
+_USUAL = re.compile(
+    r"\d{4}-\d\d-\d\d[T ]\d\d:\d\d(?::\d\d(?:\.\d{6})?)?[+-]\d\d:\d\d", re.ASCII
 )
 _OTHER_ORDER = re.compile(r"\d{1,2}[./-]\d{1,2}[./-]\d{2,4}.*", re.ASCII | re.DOTALL)
 
@@ -29,13 +34,21 @@ class InstantError(ValueError):
         super().__init__(message)
 
 
-@dataclass(frozen=True)
+@dataclass(frozen=True, slots=True)
 class Instant:
-    """An instant: UTC, the offset [min] it was given with, and whether that was assumed."""
+    """An instant: UTC, the offset [min] it was given with, and whether that was assumed.
+
+    date_only: no time of day was given, 00:00 is taken.
+    """
 
     utc: datetime
     offset_minutes: int
     zone_assumed: bool
+    date_only: bool = False
+
+
+# IANA names begin with a capital; files beside them, such as localtime, do not.
+_ZONE_NAME = re.compile(r"[A-Z][A-Za-z0-9_+-]*(?:/[A-Za-z0-9_+-]+)*", re.ASCII)
 
 
 @lru_cache(maxsize=32)
@@ -50,6 +63,8 @@ def check_zone(name: str) -> str:
 
     try:
         _zone(name)
+        if not _ZONE_NAME.fullmatch(name):
+            raise ValueError
     except (ZoneInfoNotFoundError, ValueError, OSError):
         near = get_close_matches(name, sorted(available_timezones()), n=3)
         hint = f"; near: {', '.join(near)}" if near else ""
@@ -72,6 +87,8 @@ def parse_instant(given: str | datetime, zone: str) -> Instant:
     if isinstance(given, datetime):
         return _placed(given, zone)
     text = given.strip()
+    if _USUAL.fullmatch(text):
+        return _usual(text, zone)
     match = _FORM.fullmatch(text)
     if match is None:
         if _OTHER_ORDER.fullmatch(text):
@@ -88,15 +105,31 @@ def parse_instant(given: str | datetime, zone: str) -> Instant:
         raise InstantError("there is no such day or time") from None
     if offset:
         local = local.replace(tzinfo=_offset(offset))
-    return _placed(local, zone)
+    placed = _placed(local, zone)
+    return replace(placed, date_only=True) if hour is None else placed
+
+
+def _usual(text: str, zone: str) -> Instant:
+    _check_offset(text[-6:])
+    try:
+        return _placed(datetime.fromisoformat(text), zone)
+    except ValueError as error:
+        if isinstance(error, InstantError):
+            raise
+        raise InstantError("there is no such day or time") from None
+
+
+def _check_offset(text: str) -> None:
+    if text[1:3] > "14" or text[-2:] > "59":
+        raise InstantError(f"there is no offset {text}")
 
 
 def _offset(text: str) -> timezone:
     if text in ("Z", "z"):
         return UTC
-    hours, minutes = int(text[1:3]), int(text[-2:])
-    if hours > 14 or minutes > 59:
-        raise InstantError(f"there is no offset {text}")
+    digits = text[1:].replace(":", "").ljust(4, "0")
+    _check_offset(f"{text[0]}{digits[:2]}:{digits[2:]}")
+    hours, minutes = int(digits[:2]), int(digits[2:])
     sign = -1 if text[0] == "-" else 1
     return timezone(sign * timedelta(hours=hours, minutes=minutes))
 
@@ -124,7 +157,7 @@ def _in_zone(local: datetime, zone: str) -> datetime:
 
 def format_utc(instant: datetime) -> str:
     """Return the fixed-width UTC form, whose text order is time order."""
-    return instant.astimezone(UTC).strftime("%Y-%m-%dT%H:%M:%S.%fZ")
+    return instant.astimezone(UTC).isoformat(timespec="microseconds")[:26] + "Z"
 
 
 def show_local(utc_text: str, offset_minutes: int) -> str:

@@ -10,39 +10,49 @@ import re
 from dataclasses import dataclass, field
 
 from campaign.errors import Fault
+from campaign.ledger.flat.headers import Header
 from campaign.ledger.flat.values import BOUNDS
 
 _THOUSANDS = {
-    mark: re.compile(rf"[+-]?\d{{1,3}}(?:{re.escape(mark)}\d{{3}})+", re.ASCII) for mark in ".,"
+    mark: re.compile(rf"[+-]?[1-9]\d{{0,2}}(?:{re.escape(mark)}\d{{3}})+", re.ASCII)
+    for mark in ".,"
 }
+_NUMERIC = re.compile(r"[\d\s.,+\-−±()eE/]*\d[\d\s.,+\-−±()eE/]*")
 EXPECTED = "one decimal mark in the whole file"
 
 
 @dataclass
 class MarkFinder:
-    """Collects the marks of a file's numbers; `place` is (line, column, text)."""
+    """Collects the marks of a file's numbers, until one of them is beyond doubt.
+
+    first: where each mark was met first, as (line, column, text).
+    """
 
     file: str
     first: dict[str, tuple[int, str, str]] = field(default_factory=dict)
     only_thousands: dict[str, bool] = field(default_factory=lambda: {".": True, ",": True})
 
-    def see(self, line: int, name: str, factor: float, offset: float, text: str) -> None:
-        """Take note of one number's text in a column with its scale."""
+    @property
+    def settled(self) -> bool:
+        """Whether one mark was met that can only be a decimal mark, or both were met."""
+        return len(self.first) == 2 or any(not self.only_thousands[mark] for mark in self.first)
+
+    def see(self, line: int, header: Header, text: str) -> None:
+        """Take note of one number's text in a column."""
+        if not _NUMERIC.fullmatch(text):
+            return
         for mark in ".,":
             if mark not in text:
                 continue
-            if mark not in self.first:
-                self.first[mark] = (line, name, text)
-            if self.only_thousands[mark] and not _may_be_thousands(
-                mark, name, factor, offset, text
-            ):
+            self.first.setdefault(mark, (line, header.written, text))
+            if self.only_thousands[mark] and not _may_be_thousands(mark, header, text):
                 self.only_thousands[mark] = False
 
-    def decide(self) -> tuple[str, list[Fault]]:
-        """Return the decimal mark, and a fault where there is not exactly one reading."""
+    def decide(self) -> tuple[str | None, list[Fault]]:
+        """Return the decimal mark; None, and a fault, where there is not exactly one reading."""
         if len(self.first) == 2:
             point, comma = self.first["."], self.first[","]
-            return ".", [
+            return None, [
                 Fault(
                     f"this file has decimal points ('{point[2]}' in line {point[0]}, column "
                     f"{point[1]}) and commas ('{comma[2]}' in line {comma[0]}, column "
@@ -58,11 +68,11 @@ class MarkFinder:
         for mark, (line, name, text) in self.first.items():
             if not self.only_thousands[mark]:
                 return mark, []
-            return mark, [
+            return None, [
                 Fault(
-                    f"'{text}' could have a decimal mark or thousands separators, and so could "
-                    f"every number of this file; say which with --decimal '{mark}' (decimal) or "
-                    f"--decimal '{_other(mark)}' (thousands separators, to be removed)",
+                    f"'{text}' could be read with a decimal mark or with thousands separators, "
+                    f"and so could every number of this file; if it is a decimal mark say "
+                    f"--decimal '{mark}', else take the separators out",
                     self.file,
                     line,
                     name,
@@ -73,19 +83,13 @@ class MarkFinder:
         return ".", []
 
 
-def _other(mark: str) -> str:
-    return "," if mark == "." else "."
-
-
-def _may_be_thousands(mark: str, name: str, factor: float, offset: float, text: str) -> bool:
+def _may_be_thousands(mark: str, header: Header, text: str) -> bool:
     """Return whether a text, read with thousands separators, is still in its column's range."""
     if not _THOUSANDS[mark].fullmatch(text):
         return False
-    bounds = BOUNDS.get(name)
+    bounds = BOUNDS.get(header.name)
     if bounds is None:
         return True
-    number = float(text.replace(mark, "")) * factor + offset
+    number = float(text.replace(mark, "")) * header.scale.factor + header.scale.offset
     low = number <= bounds.low if bounds.above else number < bounds.low
     return not (low or number > bounds.high)
-
-

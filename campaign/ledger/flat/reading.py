@@ -2,32 +2,40 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping, Sequence
-from dataclasses import dataclass, field
+import itertools
+from collections.abc import Iterable, Iterator, Mapping, Sequence
+from dataclasses import dataclass, field, replace
 from pathlib import Path
 from typing import Any
 
 from campaign.errors import Fault, Refused
+from campaign.ledger.flat.columns import NUMBERS
 from campaign.ledger.flat.decimals import MarkFinder
-from campaign.ledger.flat.headers import COLUMNS, Header, HeaderError, read_header
+from campaign.ledger.flat.headers import Header, shown
+from campaign.ledger.flat.heading import Heading, read_heading, read_keys
 from campaign.ledger.flat.mapping import TableMapping
-from campaign.ledger.flat.rows import NUMBERS, FlatRow, RowReader, settle_area
-from campaign.ledger.flat.sources import open_source
+from campaign.ledger.flat.rows import FlatRow, RowReader, settle_area
+from campaign.ledger.flat.sources import Row, Source, open_source
 
 __all__ = ["FlatRow", "FlatTable", "read_table", "row_from_mapping"]
 
 MOST_FAULTS = 1000
+BLOCK = 2000  # rows converted at once
 
 
 @dataclass
 class FlatTable:
-    """A file as rows with typed values, the faults found in it, and what was assumed."""
+    """A file as rows with typed values, the faults found in it, and what was assumed.
+
+    sha256: of the file's bytes. headers: canonical name -> header as written.
+    """
 
     file: str
     sha256: str
     rows: list[FlatRow] = field(default_factory=list)
     faults: list[Fault] = field(default_factory=list)
     warnings: list[str] = field(default_factory=list)
+    headers: dict[str, str] = field(default_factory=dict)
 
 
 def read_table(
@@ -47,150 +55,145 @@ def read_table(
     try:
         source = open_source(path, sheet or mapping.sheet)
         table.sha256 = source.sha256
-        rows = list(source.rows)
+        _read(table, source, mapping, decimal or mapping.decimal, zone)
     except Refused as error:
         table.faults += error.faults
-        return table
-    if len(rows) < 2:
-        table.faults.append(
-            Fault("the file has a header and no rows", table.file, expected="a row a measurement")
-        )
-        return table
-    (line, written), body = rows[0], rows[1:]
-    headers = _headers(table, line, written, mapping)
-    constants = _constants(table, mapping, headers)
-    if table.faults:
-        return table
-    columns: list[Header | None] = [*headers, *(header for header, _ in constants)]
-    values = [value for _, value in constants]
-    mark = _mark(table, columns, body, decimal or mapping.decimal)
-    reader = RowReader(table.file, columns, mark, zone)
-    _read_body(table, reader, body, len(headers), values)
     _settle_areas(table)
     _note_assumptions(table)
     return table
 
 
-def _headers(
-    table: FlatTable, line: int, written: Sequence[Any], mapping: TableMapping
-) -> list[Header | None]:
-    found: list[Header | None] = []
-    taken: dict[str, str] = {}
-    for place, cell in enumerate(written, 1):
-        text = "" if cell is None else str(cell).strip().lstrip("\ufeff")
-        if not text or text in mapping.ignore:
-            found.append(None)
-            continue
-        try:
-            header = read_header(mapping.columns.get(text, text))
-        except HeaderError as error:
-            table.faults.append(
-                Fault(str(error), table.file, line, text[:80], text[:80], error.expected)
-            )
-            found.append(None)
-            continue
-        if header.name in taken:
-            table.faults.append(
-                Fault(
-                    f"the columns '{taken[header.name]}' and '{text}' both mean {header.name}; "
-                    "keep one, or ignore one in a mapping file",
-                    table.file, line, text, text, f"one column {header.name}",
-                )
-            )  # fmt: skip
-        taken[header.name] = text
-        found.append(header)
-    for text in mapping.columns:
-        if text not in {str(cell).strip() for cell in written if cell is not None}:
-            table.faults.append(
-                Fault(
-                    f"the mapping file renames a column '{text}' that this file does not have",
-                    table.file, line, text, text, "a column of the file",
-                )
-            )  # fmt: skip
-    return found
-
-
-def _constants(
-    table: FlatTable, mapping: TableMapping, headers: Sequence[Header | None]
-) -> list[tuple[Header, Any]]:
-    present = {header.name for header in headers if header is not None}
-    found = []
-    for name, value in mapping.constants.items():
-        header = read_header(name)
-        if header.name in present:
-            table.faults.append(
-                Fault(
-                    f"the mapping file gives {header.name} as a constant, and the file has a "
-                    "column for it",
-                    table.file, None, header.name, str(value), "one of the two",
-                )
-            )  # fmt: skip
-        found.append((header, value))
-    return found
-
-
-def _mark(
-    table: FlatTable,
-    columns: Sequence[Header | None],
-    body: Sequence[tuple[int, list[Any]]],
-    stated: str | None,
-) -> str:
-    if stated is not None:
-        return stated
-    finder = MarkFinder(table.file)
-    numeric = [
-        (index, header)
-        for index, header in enumerate(columns)
-        if header is not None and COLUMNS[header.name][0] in NUMBERS
-    ]
-    for line, cells in body:
-        for index, header in numeric:
-            cell = cells[index] if index < len(cells) else None
-            if type(cell) is str and ("." in cell or "," in cell):
-                scale = header.scale
-                finder.see(line, header.name, scale.factor, scale.offset, cell.strip())
-    mark, faults = finder.decide()
-    table.faults += faults
-    return mark
-
-
-def _read_body(
-    table: FlatTable,
-    reader: RowReader,
-    body: Sequence[tuple[int, list[Any]]],
-    width: int,
-    constants: Sequence[Any],
+def _read(
+    table: FlatTable, source: Source, mapping: TableMapping, decimal: str | None, zone: str
 ) -> None:
-    broken_marks = bool(table.faults)  # one fault about the mark says it all
-    for line, cells in body:
-        extra = [cell for cell in cells[width:] if cell is not None and str(cell).strip()]
-        if extra or (len(cells) < width and len(cells) == 1):
+    first = next(source.rows, None)
+    if first is None:
+        raise Refused([Fault("the file has no header line", table.file, expected="a header line")])
+    line, _, written = first
+    heading = read_heading(table.file, line, written, mapping, zone)
+    table.faults += heading.faults
+    table.warnings += [f"{table.file}: {warning}" for warning in heading.warnings]
+    table.headers = {h.name: h.written for h in heading.headers if h is not None}
+    body = _even(table, source, heading, line)
+    finder, seen = _find_mark(table.file, heading.headers, body, decimal)
+    mark, faults = (decimal, []) if decimal is not None else finder.decide()
+    table.faults += faults
+    reader = RowReader(
+        table.file, heading.headers, mark, zone,
+        delimiter=source.delimiter, fixed=heading.fixed, required=heading.required,
+    )  # fmt: skip
+    _read_body(table, reader, itertools.chain(seen, body))
+    if reader.wrong_marks and finder.first:
+        _name_both_marks(table, reader.wrong_marks, finder)
+    if not table.rows and not table.faults:
+        table.faults.append(
+            Fault("the file has a header and no rows", table.file, expected="a row a measurement")
+        )
+
+
+def _even(table: FlatTable, source: Source, heading: Heading, line: int) -> Iterator[Row]:
+    """Yield rows as wide as the header; others are faults and passed over."""
+    width = len(heading.headers)
+    unnamed = [place for place, name in enumerate(heading.written) if not name]
+    for row in source.rows:
+        number, _, cells = row
+        found = len(cells)
+        if found < width and source.typed:
+            cells = [*cells, *([None] * (width - found))]
+            row = (number, cells, cells)
+        elif found != width and (found < width or any(_filled(c) for c in cells[width:])):
             table.faults.append(
                 Fault(
-                    f"it has {len(cells)} cells and the header has {width}; check "
-                    "delimiters and quotation marks",
-                    table.file, line, None, str(cells[-1])[:80], f"{width} cells",
+                    f"the row has {found} cells and the header has {width}; check delimiters and "
+                    "quotation marks",
+                    table.file, number, None, shown(cells[-1], 80) or None, f"{width} cells",
                 )
             )  # fmt: skip
+            if len(table.faults) > MOST_FAULTS:
+                return
             continue
-        padded = [*cells[:width], *([None] * (width - len(cells))), *constants]
-        row, faults = reader.read(line, padded)
-        table.rows.append(row)
-        if not broken_marks:
-            table.faults += faults
-        if len(table.faults) > MOST_FAULTS:
+        if unnamed and any(_filled(cells[place]) for place in unnamed):
+            place = next(place for place in unnamed if _filled(cells[place]))
             table.faults.append(
                 Fault(
-                    f"more than {MOST_FAULTS} faults; the rest of the file was not read",
-                    table.file,
-                    line,
+                    f"column {place + 1} has no header but holds '{shown(cells[place], 60)}'",
+                    table.file, number, f"column {place + 1}", shown(cells[place], 80),
+                    "a header above every filled column",
                 )
+            )  # fmt: skip
+            unnamed.remove(place)
+        yield row
+
+
+def _filled(cell: Any) -> bool:
+    return cell is not None and str(cell).strip() != ""
+
+
+def _find_mark(
+    file: str, headers: Sequence[Header | None], body: Iterator[Row], stated: str | None
+) -> tuple[MarkFinder, list[Row]]:
+    """Look at rows until a decimal mark is beyond doubt; return what was looked at."""
+    finder = MarkFinder(file)
+    seen: list[Row] = []
+    if stated is not None:
+        return finder, seen
+    numeric = [(i, h) for i, h in enumerate(headers) if h is not None and h.kind in NUMBERS]
+    for row in body:
+        seen.append(row)
+        line, _, cells = row
+        for index, header in numeric:
+            cell = cells[index]
+            if type(cell) is str and ("." in cell or "," in cell):
+                finder.see(line, header, cell.strip())
+        if finder.settled:
+            break
+    return finder, seen
+
+
+def _read_body(table: FlatTable, reader: RowReader, rows: Iterable[Row]) -> None:
+    rows = iter(rows)
+    while block := list(itertools.islice(rows, BLOCK)):
+        found, faults = reader.read(block)
+        table.rows += found
+        table.faults += faults
+        if len(table.faults) > MOST_FAULTS:
+            left = sum(1 for _ in rows)
+            _cut(table, block[-1][0], left)
+            return
+
+
+def _cut(table: FlatTable, line: int, left: int) -> None:
+    more = len(table.faults) - MOST_FAULTS
+    del table.faults[MOST_FAULTS:]
+    table.faults.append(
+        Fault(
+            f"{more} more faults were found up to line {line}, and {left} rows after it were not "
+            "looked at; mend these first",
+            table.file,
+            line,
+        )
+    )
+
+
+def _name_both_marks(table: FlatTable, count: int, finder: MarkFinder) -> None:
+    """Say in the fault about a wrong decimal mark where the right one was seen."""
+    mark, (line, column, text) = next(iter(finder.first.items()))
+    end = f"but the decimal mark of this file is '{mark}'"
+    for place, fault in enumerate(table.faults):
+        if fault.message.endswith(end):
+            more = f"; {count - 1} more numbers are written so" if count > 1 else ""
+            message = (
+                f"{fault.message} ('{text}' in line {line}, column {column}){more}; write every "
+                "number with one mark and without thousands separators, or say which with --decimal"
             )
+            table.faults[place] = replace(fault, message=message)
             return
 
 
 def _settle_areas(table: FlatTable) -> None:
     """Convert values per area where the file itself says the area of the cell."""
+    if not any(row.per_area for row in table.rows):
+        return
     areas: dict[str, float] = {}
     for row in table.rows:
         if "cell" in row.values and "area_cm2" in row.values:
@@ -201,14 +204,16 @@ def _settle_areas(table: FlatTable) -> None:
 
 
 def _note_assumptions(table: FlatTable) -> None:
-    assumed = sum(
-        1
-        for row in table.rows
-        if "measured_at" in row.values and row.values["measured_at"].zone_assumed
-    )
+    instants = [row.values["measured_at"] for row in table.rows if "measured_at" in row.values]
+    assumed = sum(1 for instant in instants if instant.zone_assumed)
     if assumed:
         table.warnings.append(
             f"{table.file}: {assumed} times without offset were read in the campaign's zone"
+        )
+    dates = sum(1 for instant in instants if instant.date_only)
+    if dates:
+        table.warnings.append(
+            f"{table.file}: {dates} measurements give a date and no time of day; 00:00 was taken"
         )
     kelvin = [row.values["temperature_K"] for row in table.rows if "temperature_K" in row.values]
     if kelvin and min(kelvin) > 273.15 + 200:
@@ -224,32 +229,10 @@ def row_from_mapping(
 
     Values may be JSON numbers, texts or None; the decimal mark is a point.
     """
-    faults: list[Fault] = []
-    headers: list[Header | None] = []
-    cells: list[Any] = []
-    names: set[str] = set()
-    for key, value in stated.items():
-        try:
-            header = read_header(str(key))
-        except HeaderError as error:
-            faults.append(Fault(str(error), file, line, str(key)[:80], None, error.expected))
-            continue
-        if header.name in names:
-            faults.append(
-                Fault(f"{header.name} is stated twice", file, line, str(key), None, "once")
-            )
-        if isinstance(value, (bool, dict, list)):
-            faults.append(
-                Fault(
-                    f"{key} is a JSON {type(value).__name__}", file, line, str(key),
-                    str(value)[:80], "a number or a text",
-                )
-            )  # fmt: skip
-            continue
-        names.add(header.name)
-        headers.append(header)
-        cells.append(value)
-    row, more = RowReader(file, headers, ".", zone).read(line, cells)
+    headers, cells, fixed, faults = read_keys(file, line, stated)
+    reader = RowReader(file, headers, ".", zone, fixed=fixed, guarded=False)
+    rows, more = reader.read([(line, cells, cells)])
+    row = rows[0]
     if row.per_area and "area_cm2" in row.values:
         settle_area(row, row.values["area_cm2"])
     return row, [*faults, *more]

@@ -1,29 +1,19 @@
-"""Turning the cells of one row into typed values, collecting every fault."""
+"""Turning rows of cells into typed values, collecting every fault."""
 
 from __future__ import annotations
 
-from collections.abc import Callable, Mapping, Sequence
+import csv
+import io
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, field
 from typing import Any
 
 from campaign.errors import Fault
-from campaign.ledger.flat.headers import COLUMNS, Header
-from campaign.ledger.flat.units import Scale
-from campaign.ledger.flat.values import (
-    WORDS,
-    Value,
-    ValueFault,
-    as_point,
-    in_bounds,
-    instant_reader,
-    is_absent,
-    with_uncertainty,
-)
-from campaign.ledger.quantities import QUANTITIES, WITH_ERROR
+from campaign.ledger.flat.columns import WrongMark, column_for
+from campaign.ledger.flat.headers import Header, shown
+from campaign.ledger.flat.values import Value, ValueFault
+from campaign.ledger.quantities import QUANTITIES
 
-Reader = Callable[[str, Any], Any]
-
-NUMBERS = ("number", "integer", "value", "error")
 # The flat table is in degrees Celsius; what is kept is kelvin.
 STORED_AS = {"temperature_C": "temperature_K"}
 REQUIRED = {
@@ -32,6 +22,16 @@ REQUIRED = {
     "temperature_C": "a temperature in degrees Celsius",
 }
 
+Block = Sequence[tuple[int, Any, Sequence[Any]]]  # line, row as written, its cells
+
+
+@dataclass(frozen=True)
+class Form:
+    """What the rows of one file share: where each column stands, and the cells' delimiter."""
+
+    places: Mapping[str, int] = field(default_factory=dict)
+    delimiter: str = ","
+
 
 @dataclass(slots=True)
 class FlatRow:
@@ -39,202 +39,210 @@ class FlatRow:
 
     values holds only what is filled; `temperature_K` [K] stands for temperature_C, fitted
     quantities are `Value`s in canonical units as fitted. per_area: quantities that are still
-    per geometric area.
+    per geometric area. written: the row's text, or its cells.
     """
 
     file: str
     line: int
     values: dict[str, Any]
-    written: Mapping[str, Any] = field(default_factory=dict)
+    written: str | Sequence[Any] = ()
     per_area: tuple[str, ...] = ()
+    form: Form = field(default_factory=Form)
 
     def raw(self, name: str) -> str | None:
         """Return the cell of a column as it was written, or None."""
-        given = self.written.get(name)
-        return None if given is None else str(given)
+        place = self.form.places.get(name)
+        if place is None:
+            return None
+        cells = self.written
+        if isinstance(cells, str):
+            lines = io.StringIO(cells, newline="")
+            cells = next(csv.reader(lines, delimiter=self.form.delimiter), [])
+        given = cells[place] if place < len(cells) else None
+        return None if given is None or given == "" else str(given)
 
 
 class RowReader:
-    """Reads the rows of one file: columns, decimal mark and zone are settled."""
+    """Reads rows in blocks: columns, decimal mark and zone are settled.
+
+    headers: by place, None for columns passed over. fixed: values that every row has, for
+    columns the file does not have. required: columns whose empty cells are faults. decimal:
+    the mark, or None where it could not be told (numbers with a mark are then passed over).
+    """
 
     def __init__(
-        self, file: str, headers: Sequence[Header | None], decimal: str, zone: str
+        self,
+        file: str,
+        headers: Sequence[Header | None],
+        decimal: str | None,
+        zone: str,
+        *,
+        delimiter: str = ",",
+        fixed: Mapping[str, Any] | None = None,
+        required: Sequence[str] = tuple(REQUIRED),
+        guarded: bool = True,
     ) -> None:
         self.file = file
-        self.decimal = decimal
-        self._instant = instant_reader(zone)
+        self._fixed = dict(fixed or {})
+        self._required = required
+        self._headers = {h.name: h for h in headers if h is not None}
         self._columns = [
-            (index, header.name, COLUMNS[header.name][0], header.scale, self._reader(header))
-            for index, header in enumerate(headers)
+            (place, header, column_for(header, decimal, zone, guarded=guarded))
+            for place, header in enumerate(headers)
             if header is not None
         ]
-        self._relative = {h.name for h in headers if h is not None and h.scale.relative}
-        self._per_area = {h.name for h in headers if h is not None and h.scale.per_area}
-        self._seen: dict[tuple[str, Any], Any] = {}
+        places = {h.name: place for place, h in enumerate(headers) if h is not None}
+        self._form = Form(places, delimiter)
+        self._per_area = tuple(
+            q for q in QUANTITIES if q in self._headers and self._headers[q].scale.per_area
+        )
+        self.wrong_marks = 0
 
-    def _reader(self, header: Header) -> Reader:
-        kind = COLUMNS[header.name][0]
-        if kind == "instant":
-            return self._instant
-        if kind in WORDS:
-            return WORDS[kind]
-        scale = header.scale
-        if kind == "value":
-            return self._value_reader(scale)
-        return self._number_reader(scale, whole=kind == "integer")
+    def read(self, block: Block) -> tuple[list[FlatRow], list[Fault]]:
+        """Return the rows of a block and every fault in them, by line."""
+        reading = _Reading(self.file, block, self._form.places)
+        found: dict[str, list[Any]] = {}
+        for place, header, column in self._columns:
+            cells = [row[2][place] for row in block]
+            found[header.name] = column.convert(cells, reading.reporter(header, self))
+        for name, value in self._fixed.items():
+            found[name] = [value] * len(block)
+        self._join_errors(found, reading)
+        self._whole_rows(found, reading)
+        return self._rows(found, block), reading.in_order()
 
-    def read(self, line: int, cells: Sequence[Any]) -> tuple[FlatRow, list[Fault]]:
-        """Return the row and every fault in it."""
-        values: dict[str, Any] = {}
-        written: dict[str, Any] = {}
-        faults: list[Fault] = []
-        for index, name, kind, _, reader in self._columns:
-            given = cells[index] if index < len(cells) else None
-            if given is None or given == "" or (type(given) is str and not given.strip()):
+    def _join_errors(self, found: dict[str, list[Any]], reading: _Reading) -> None:
+        """Make each quantity's column, and that of its standard error, one of values."""
+        for quantity in QUANTITIES:
+            errors = found.pop(f"{quantity}_se", None)
+            if quantity in found:
+                values = found[quantity]
+                if errors is None or not any(errors):
+                    found[quantity] = [_as_value(value) for value in values]
+                    continue
+            elif errors is None:
                 continue
-            written[name] = given
-            try:
-                values[STORED_AS.get(name, name)] = self._once(kind, name, given, reader)
-            except ValueFault as fault:
-                faults.append(
-                    Fault(str(fault), self.file, line, name, str(given)[:200], fault.expected)
-                )
-        row = FlatRow(self.file, line, values, written)
-        faults += self._join_errors(row)
-        faults += _whole_row_faults(row, {fault.column for fault in faults})
-        row.per_area = tuple(q for q in QUANTITIES if q in self._per_area and q in values)
-        return row, faults
+            values = found.get(quantity) or [None] * reading.count
+            header = self._headers[f"{quantity}_se"]
+            found[quantity] = [
+                _as_value(value)
+                if error is None
+                else self._joined(place, value, error, header, reading)
+                for place, (value, error) in enumerate(zip(values, errors, strict=True))
+            ]
 
-    def _once(self, kind: str, name: str, given: Any, reader: Reader) -> Any:
-        """Read a repeated word once: labels and recipes recur in every row."""
-        if kind in NUMBERS or kind == "instant":
-            return reader(name, given)
-        key = (name, given)
-        if key not in self._seen:
-            self._seen[key] = reader(name, given)
-        return self._seen[key]
-
-    def _number_reader(self, scale: Scale, *, whole: bool) -> Reader:
-        factor, offset = scale.factor, scale.offset
-
-        def read(name: str, given: Any) -> Any:
-            number = self._number(name, given, uncertain=False)[0] * factor + offset
-            in_bounds(name, number, given)
-            if not whole:
-                return number
-            if number != int(number):
-                raise ValueFault(f"{name} is {given}, which is not whole", "a whole number")
-            return int(number)
-
-        return read
-
-    def _value_reader(self, scale: Scale) -> Reader:
-        factor = scale.factor
-
-        def read(name: str, given: Any) -> Value:
-            if is_absent(name, given):
-                return Value(None)
-            number, error = self._number(name, given, uncertain=name in WITH_ERROR)
-            value = in_bounds(name, number * factor, given)
-            if error is not None:
-                error = in_bounds(f"{name}_se", error * factor, given)
-            return Value(value, error)
-
-        return read
-
-    def _number(self, name: str, given: Any, *, uncertain: bool) -> tuple[float, float | None]:
-        if isinstance(given, (int, float)) and not isinstance(given, bool):
-            return self._as_float(name, given), None
-        try:
-            number, error = with_uncertainty(as_point(str(given), self.decimal))
-        except (ValueError, OverflowError):
-            raise ValueFault(self._not_a_number(name, given), self._expected(name)) from None
-        if error is not None and not uncertain:
-            raise ValueFault(
-                f"{name} is '{str(given)[:60]}', but an uncertainty belongs to "
-                f"{', '.join(WITH_ERROR)} only",
-                "a plain number",
+    def _joined(
+        self, place: int, value: Any, error: float, header: Header, reading: _Reading
+    ) -> Value | None:
+        if type(value) is float:
+            return Value(value, error * value if header.scale.relative else error)
+        quantity = header.name.removesuffix("_se")
+        if value is None:
+            if (place, quantity) not in reading.faulty:
+                message = f"{header.name} is filled but {quantity} is empty"
+                reading.add(place, header.name, header.written, message,
+                            f"a value in {quantity}, or {header.name} empty")  # fmt: skip
+            return None
+        known: Value = value
+        if known.value is None:
+            message = f"{header.name} is filled but {quantity} is absent"
+            reading.add(place, header.name, header.written, message, f"{header.name} empty")
+        else:
+            message = (
+                f"{quantity} carries an uncertainty itself and {header.name} is filled as well; "
+                "keep one of the two"
             )
-        return number, error
+            reading.add(place, header.name, header.written, message, "one standard uncertainty")
+        return known
 
-    def _as_float(self, name: str, given: float) -> float:
-        try:
-            return float(given)
-        except OverflowError:
-            raise ValueFault(
-                f"{name} is {str(given)[:20]}..., which is out of range", self._expected(name)
-            ) from None
+    def _whole_rows(self, found: Mapping[str, list[Any]], reading: _Reading) -> None:
+        for name in self._required:
+            column = found.get(name, [None] * reading.count)
+            written = self._headers[name].written if name in self._headers else name
+            for place, value in enumerate(column):
+                if value is None and (place, name) not in reading.faulty:
+                    reading.add(place, name, written, f"{name} is empty; every row needs it",
+                                REQUIRED[name])  # fmt: skip
+        self._some_value(found, reading)
+        self._frequencies(found, reading)
 
-    def _not_a_number(self, name: str, given: Any) -> str:
-        other = "," if self.decimal == "." else "."
-        why = "which is not a number"
-        if other in str(given):
-            why = f"but the decimal mark of this file is '{self.decimal}'"
-        return f"{name} is '{str(given)[:60]}', {why}"
-
-    def _expected(self, name: str) -> str:
-        mark = self.decimal
-        if COLUMNS[name][0] == "value":
-            return f"a number such as 41{mark}2, 41{mark}2±0{mark}8 or 41{mark}2(8)"
-        return f"a number such as 41{mark}2"
-
-    def _join_errors(self, row: FlatRow) -> list[Fault]:
-        """Move each standard error column into its value."""
-        faults = []
-        for quantity in WITH_ERROR:
-            name = f"{quantity}_se"
-            error = row.values.pop(name, None)
-            if error is None:
+    def _some_value(self, found: Mapping[str, list[Any]], reading: _Reading) -> None:
+        columns = [found[q] for q in QUANTITIES if q in found]
+        filled = zip(*columns, strict=True) if columns else [()] * reading.count
+        for place, values in enumerate(filled):
+            if any(value is not None for value in values):
                 continue
-            value: Value | None = row.values.get(quantity)
-            if value is None or value.value is None:
-                state = "absent" if value is not None else "empty"
-                if quantity in row.written and value is None:
-                    continue  # the value itself was not read, which is reported
-                faults.append(
-                    self._fault(row, name, f"{name} is filled but {quantity} is {state}",
-                                f"a value in {quantity}, or {name} empty")  # fmt: skip
-                )
-            elif value.se is not None:
-                faults.append(
-                    self._fault(row, name,
-                                f"{quantity} carries an uncertainty itself and {name} is filled "
-                                "as well; keep one of the two", "one standard uncertainty")
+            if not any((place, q) in reading.faulty for q in QUANTITIES):
+                reading.add(
+                    place, "R_ct", "R_ct",
+                    "no fitted value is filled; every row needs one at least",
+                    "a value in one of " + ", ".join(QUANTITIES),
                 )  # fmt: skip
-            else:
-                if name in self._relative:
-                    error *= value.value
-                row.values[quantity] = Value(value.value, error)
-        return faults
 
-    def _fault(self, row: FlatRow, column: str, message: str, expected: str) -> Fault:
-        return Fault(message, self.file, row.line, column, row.raw(column), expected)
+    def _frequencies(self, found: Mapping[str, list[Any]], reading: _Reading) -> None:
+        if "f_min_Hz" not in found or "f_max_Hz" not in found:
+            return
+        pairs = zip(found["f_min_Hz"], found["f_max_Hz"], strict=True)
+        for place, (low, high) in enumerate(pairs):
+            if low is not None and high is not None and low >= high:
+                written = self._headers["f_min_Hz"].written if "f_min_Hz" in self._headers else None
+                reading.add(
+                    place, "f_min_Hz", written or "f_min_Hz",
+                    f"f_min_Hz ({low:g} Hz) is not below f_max_Hz ({high:g} Hz)",
+                    "the lower frequency",
+                )  # fmt: skip
+
+    def _rows(self, found: Mapping[str, list[Any]], block: Block) -> list[FlatRow]:
+        names = [STORED_AS.get(name, name) for name in found]
+        filled = zip(*found.values(), strict=True) if found else [()] * len(block)
+        rows = []
+        for (line, written, _), cells in zip(block, filled, strict=True):
+            values = {n: v for n, v in zip(names, cells, strict=True) if v is not None}
+            per_area = tuple(q for q in self._per_area if q in values) if self._per_area else ()
+            rows.append(FlatRow(self.file, line, values, written, per_area, self._form))
+        return rows
 
 
-def _whole_row_faults(row: FlatRow, faulty: set[str | None]) -> list[Fault]:
-    """Return what is wrong with a row as a whole (columns already faulty left alone)."""
-    faults = []
-    for name, expected in REQUIRED.items():
-        if STORED_AS.get(name, name) not in row.values and name not in faulty:
-            faults.append(
-                Fault(f"{name} is empty; every row needs it", row.file, row.line, name, None, expected)
-            )
-    if not any(q in row.values or q in faulty for q in QUANTITIES):
-        faults.append(
-            Fault(
-                "no fitted value is filled; every row needs one at least",
-                row.file, row.line, "R_ct", None, "a value in one of " + ", ".join(QUANTITIES),
-            )
-        )  # fmt: skip
-    low, high = row.values.get("f_min_Hz"), row.values.get("f_max_Hz")
-    if low is not None and high is not None and low >= high:
-        faults.append(
-            Fault(
-                f"f_min_Hz ({row.raw('f_min_Hz')}) is not below f_max_Hz ({row.raw('f_max_Hz')})",
-                row.file, row.line, "f_min_Hz", row.raw("f_min_Hz"), "the lower frequency",
-            )
-        )  # fmt: skip
-    return faults
+class _Reading:
+    """The faults of one block while it is read."""
+
+    def __init__(self, file: str, block: Block, places: Mapping[str, int]) -> None:
+        self.file = file
+        self.places = places
+        self.block = block
+        self.count = len(block)
+        self.faulty: set[tuple[int, str]] = set()
+        self._faults: list[tuple[int, Fault]] = []
+
+    def reporter(self, header: Header, reader: RowReader) -> Any:
+        """Return what a column calls for a cell it cannot read."""
+
+        def report(place: int, cell: Any, fault: ValueFault | None) -> None:
+            self.faulty.add((place, header.name))
+            if isinstance(fault, WrongMark):
+                reader.wrong_marks += 1
+                if reader.wrong_marks > 1:
+                    return  # the first one says it for the file
+            if fault is not None:
+                self.add(place, header.name, header.written, str(fault), fault.expected)
+
+        return report
+
+    def add(self, place: int, name: str, column: str, message: str, expected: str) -> None:
+        """Note a fault of one row, with what stands in the column's cell."""
+        self.faulty.add((place, name))
+        line, _, cells = self.block[place]
+        at = self.places.get(name)
+        value = None if at is None or cells[at] in (None, "") else shown(cells[at], 200)
+        self._faults.append((place, Fault(message, self.file, line, column, value, expected)))
+
+    def in_order(self) -> list[Fault]:
+        """Return the faults by line, within a line by column."""
+        return [fault for _, fault in sorted(self._faults, key=lambda item: item[0])]
+
+
+def _as_value(value: Any) -> Value | None:
+    return Value(value) if type(value) is float else value
 
 
 def settle_area(row: FlatRow, area_cm2: float) -> None:
@@ -247,3 +255,4 @@ def settle_area(row: FlatRow, area_cm2: float) -> None:
         error = None if value.se is None else value.se * factor
         row.values[quantity] = Value(value.value * factor, error)
     row.per_area = ()
+

@@ -1,213 +1,239 @@
-"""The cells of a file: CSV text or an XLSX sheet, with limits against hostile files."""
+"""The rows of a file, CSV text or an XLSX sheet, with limits against hostile files.
+
+Text is UTF-8, or UTF-16 with its byte-order mark; anything else is refused and named, since a
+micro sign read with the wrong table would be another unit.
+"""
 
 from __future__ import annotations
 
 import csv
 import hashlib
 import io
-import zipfile
+import re
 from collections.abc import Iterator
 from dataclasses import dataclass
 from pathlib import Path
 from typing import Any
 
 from campaign.errors import Refused, refused
+from campaign.ledger.flat.headers import shown
 
 LARGEST = 1 << 28  # bytes of a file
-LONGEST_LINE = 1 << 20  # bytes of a line
+LONGEST_LINE = 1 << 20  # characters of a line
 MOST_ROWS = 2_000_000
-LARGEST_SHEET = 1 << 30  # bytes of an XLSX once unpacked
-MOST_SHRUNK = 200  # times an XLSX may grow when unpacked
+MOST_COLUMNS = 500
+
+Row = tuple[int, Any, list[Any]]  # line, row as written, its cells
 
 
 @dataclass(frozen=True)
 class Source:
-    """A file's digest and its rows: (line, cells), the first being the header."""
+    """A file's digest and its rows: (line, as written, cells), the first being the header.
+
+    typed: cells are a spreadsheet's numbers, dates and texts, and rows may be shorter than
+    the header.
+    """
 
     file: str
     sha256: str
-    rows: Iterator[tuple[int, list[Any]]]
+    rows: Iterator[Row]
+    delimiter: str = ","
+    typed: bool = False
 
 
 def open_source(path: Path, sheet: str | None) -> Source:
-    """Return the rows of a CSV or XLSX file; raises Refused where it is neither."""
+    """Return the rows of a CSV or XLSX file; raises Refused where it is neither.
+
+    Faults further down in the file are raised, as Refused, by the iterator of its rows.
+    """
+    name = path.name
+    content = _content(path)
+    digest = hashlib.sha256(content).hexdigest()
+    if content.startswith(b"PK\x03\x04"):
+        from campaign.ledger.flat.sheets import sheet_rows
+
+        return Source(name, digest, sheet_rows(name, content, sheet), typed=True)
+    if content.startswith(b"\xd0\xcf\x11\xe0"):
+        raise refused(
+            f"{name} is an old or a protected workbook; save it as XLSX without password, or as "
+            "CSV UTF-8",
+            file=name,
+            expected="an XLSX or CSV file",
+        )
+    if sheet is not None:
+        raise refused(
+            f"a sheet is named but {name} is not an XLSX file", file=name, expected="an XLSX file"
+        )
+    text = _Text(name, content)
+    delimiter = text.find_delimiter()
+    return Source(name, digest, text.rows(delimiter), delimiter)
+
+
+def _content(path: Path) -> bytes:
     try:
-        size = path.stat().st_size
-        if size > LARGEST:
-            raise refused(
-                f"the file has {size / 1e6:.0f} MB, more than the {LARGEST / 1e6:.0f} MB that are "
-                "read; split it",
-                file=str(path),
-                expected="a smaller file",
-            )
-        content = path.read_bytes()
+        with path.open("rb") as stream:
+            content = stream.read(LARGEST + 1)
     except OSError as error:
         raise refused(
             f"the file cannot be read: {error.strerror or error}",
             file=str(path),
             expected="a readable file",
         ) from None
-    name = path.name
-    digest = hashlib.sha256(content).hexdigest()
-    if content.startswith(b"PK\x03\x04"):
-        return Source(name, digest, _sheet_rows(name, content, sheet))
-    if sheet is not None:
+    if len(content) > LARGEST:
         raise refused(
-            f"a sheet is named but {name} is not an XLSX file", file=name, expected="an XLSX file"
+            f"the file is larger than the {LARGEST >> 20} MB that are read; split it",
+            file=str(path),
+            expected="a smaller file",
         )
-    return Source(name, digest, _text_rows(name, _text(name, content)))
-
-
-def _text(name: str, content: bytes) -> str:
     if not content.strip():
-        raise refused("the file is empty", file=name, expected="a header and rows")
-    encoding = "utf-8-sig"
-    if content.startswith((b"\xff\xfe", b"\xfe\xff")):
-        encoding = "utf-16"
-    try:
-        text = content.decode(encoding)
-    except UnicodeDecodeError as error:
-        line = content.count(b"\n", 0, error.start) + 1
-        raise refused(
-            f"the file is not UTF-8: byte {content[error.start]:#04x} in line {line}; save it as "
-            "UTF-8 (in a spreadsheet: CSV UTF-8)",
-            file=name,
-            line=line,
-            value=f"{content[error.start]:#04x}",
-            expected="UTF-8 text",
-        ) from None
-    if "\x00" in text:
-        line = text.count("\n", 0, text.index("\x00")) + 1
-        raise refused(
-            f"the file holds a NUL character in line {line}; it is not a text table",
-            file=name,
-            line=line,
-            expected="UTF-8 text",
-        )
-    return text
+        raise refused("the file is empty", file=path.name, expected="a header and rows")
+    return content
 
 
-def _refuse_long_lines(name: str, text: str) -> None:
-    for number, line in enumerate(io.StringIO(text), 1):
+_BLANK = " ,;\t\r\n"
+_SEPARATOR_LINE = re.compile(r'"?sep=([,;\t])"?\s*')  # common practice of spreadsheets
+
+
+class _Text:
+    """A text file, read line by line; the lines of the row being read are held."""
+
+    def __init__(self, name: str, content: bytes) -> None:
+        self.name = name
+        self._bytes = content
+        wide = content.startswith((b"\xff\xfe", b"\xfe\xff"))
+        self._encoding = "utf-16" if wide else "utf-8-sig"
+        self._stream = io.TextIOWrapper(io.BytesIO(content), self._encoding, newline="")
+        self._number = 0
+        self._held: list[str] = []
+
+    def __iter__(self) -> Iterator[str]:
+        return self
+
+    def __next__(self) -> str:
+        try:
+            line = self._stream.readline(LONGEST_LINE + 1)
+        except UnicodeDecodeError:
+            raise self._not_text() from None
+        if not line:
+            raise StopIteration
+        self._number += 1
         if len(line) > LONGEST_LINE:
             raise refused(
-                f"it has {len(line)} characters, which no table needs",
-                file=name,
-                line=number,
+                f"line {self._number} has more than {LONGEST_LINE} characters, which no table "
+                "needs",
+                file=self.name,
+                line=self._number,
                 expected=f"lines of at most {LONGEST_LINE} characters",
             )
+        if "\x00" in line:
+            raise refused(
+                f"the file holds a NUL character in line {self._number}; it is not a text table",
+                file=self.name,
+                line=self._number,
+                expected="UTF-8 text",
+            )
+        self._held.append(line)
+        return line
 
+    def _not_text(self) -> Refused:
+        try:
+            self._bytes.decode(self._encoding)
+        except UnicodeDecodeError as error:
+            before = self._bytes[: error.start].decode(self._encoding, "replace")
+            line = before.count("\n") + 1
+            found = f"{self._bytes[error.start]:#04x}"
+            return refused(
+                f"the file is not {self._encoding.upper().removesuffix('-SIG')} text: byte {found} "
+                f"in line {line}; save it as UTF-8 (in a spreadsheet: CSV UTF-8)",
+                file=self.name,
+                line=line,
+                value=found,
+                expected="UTF-8 text",
+            )
+        raise AssertionError("text that decodes as a whole decodes in parts")  # pragma: no cover
 
-def _delimiter(name: str, header: str) -> str:
-    """Return the delimiter of a header line: the one that splits it into most columns."""
-    counts = {mark: len(next(csv.reader([header], delimiter=mark), [])) for mark in ",;\t"}
-    best = max(counts, key=lambda mark: counts[mark])
-    if counts[best] < 2:
-        raise refused(
-            f"the header '{header.strip()[:60]}' has one column only; separate columns with "
-            "comma, semicolon or tab",
-            file=name,
-            line=1,
-            value=header.strip()[:60],
-            expected="a header line with several columns",
-        )
-    return best
+    def find_delimiter(self) -> str:
+        """Skip what stands before the header and return the delimiter; the header is held."""
+        for line in self:
+            stated = _SEPARATOR_LINE.fullmatch(line)
+            if stated is not None:
+                self._held.clear()
+                return stated[1]
+            if line.strip(_BLANK) and not line.lstrip('"').startswith("#"):
+                return self._delimiter(line)
+            self._held.clear()
+        raise refused("the file has no header line", file=self.name, expected="a header line")
 
+    def _delimiter(self, header: str) -> str:
+        """Return the delimiter that splits a header line into most columns."""
+        counts = {mark: header.count(mark) for mark in ",;\t"}
+        if '"' in header:
+            try:
+                counts = {
+                    mark: len(next(csv.reader([header], delimiter=mark), [])) - 1 for mark in counts
+                }
+            except csv.Error as error:
+                raise self._bad_row(self._number, error) from None
+        best = max(counts, key=lambda mark: counts[mark])
+        if counts[best] < 1:
+            raise refused(
+                f"the header '{shown(header, 60)}' has one column only; separate columns with "
+                "comma, semicolon or tab",
+                file=self.name,
+                line=self._number,
+                value=shown(header, 60),
+                expected="a header line with several columns",
+            )
+        return best
 
-def _text_rows(name: str, text: str) -> Iterator[tuple[int, list[Any]]]:
-    _refuse_long_lines(name, text)
-    csv.field_size_limit(LONGEST_LINE)
-    lines = io.StringIO(text, newline="")
-    skipped = 0
-    header = lines.readline()
-    while header and (not header.strip(" ,;\t\r\n") or header.startswith("#")):
-        skipped += 1
-        header = lines.readline()
-    if not header:
-        raise refused("the file has no header line", file=name, expected="a header line")
-    try:
-        delimiter = _delimiter(name, header)
-    except csv.Error as error:
-        raise _csv_fault(name, skipped + 1, error) from None
-    rest = io.StringIO(header + lines.read(), newline="")
-    reader = csv.reader(rest, delimiter=delimiter, strict=True)
-    line = skipped + 1
-    try:
-        for count, cells in enumerate(reader):
-            if count > MOST_ROWS:
-                raise refused(
-                    f"the file has more than {MOST_ROWS} rows; split it", file=name, line=line,
-                    expected="fewer rows",
-                )  # fmt: skip
-            if any(cell.strip() for cell in cells):
-                yield line, cells
-            line = skipped + reader.line_num + 1
-    except csv.Error as error:
-        raise _csv_fault(name, skipped + reader.line_num, error) from None
+    def rows(self, delimiter: str) -> Iterator[Row]:
+        """Yield the rows, the header first; blank ones are passed over."""
+        csv.field_size_limit(LONGEST_LINE)
+        line = self._number if self._held else self._number + 1
+        lines = _Again(self._held.copy(), self)
+        reader = csv.reader(lines, delimiter=delimiter, strict=True)
+        count = 0
+        try:
+            for cells in reader:
+                held = self._held
+                written = held[0] if len(held) == 1 else "".join(held)
+                held.clear()
+                if written.strip(_BLANK):
+                    count += 1
+                    self._refuse_many(count, len(cells), line)
+                    yield line, written, cells
+                line = self._number + 1
+        except csv.Error as error:
+            raise self._bad_row(self._number, error) from None
 
+    def _refuse_many(self, rows: int, columns: int, line: int) -> None:
+        if rows > MOST_ROWS or columns > MOST_COLUMNS:
+            what = f"{MOST_ROWS} rows" if rows > MOST_ROWS else f"{MOST_COLUMNS} columns"
+            raise refused(
+                f"the file has more than {what}; split it", file=self.name, line=line,
+                expected=f"at most {what}",
+            )  # fmt: skip
 
-def _csv_fault(name: str, line: int, error: csv.Error) -> Refused:
-    return refused(
-        f"it is not a table row: {error}; check its quotation marks",
-        file=name,
-        line=line,
-        expected="cells separated by one delimiter",
-    )
-
-
-def _sheet_rows(name: str, content: bytes, sheet: str | None) -> Iterator[tuple[int, list[Any]]]:
-    _refuse_bomb(name, content)
-    import openpyxl
-
-    try:
-        book = openpyxl.load_workbook(io.BytesIO(content), read_only=True, data_only=True)
-    except Exception as error:  # openpyxl raises whatever its parsers raise
-        raise _not_a_sheet(name, error) from None
-    if sheet is not None and sheet not in book.sheetnames:
-        raise refused(
-            f"there is no sheet '{sheet}' in {name}; it has {', '.join(book.sheetnames[:8])}",
-            file=name,
-            value=sheet,
-            expected="one of its sheets",
-        )
-    if sheet is None and len(book.sheetnames) > 1:
-        raise refused(
-            f"{name} has several sheets ({', '.join(book.sheetnames[:8])}); name one with --sheet "
-            "or in a mapping file",
-            file=name,
-            expected="the name of a sheet",
-        )
-    chosen = book[sheet] if sheet is not None else book.worksheets[0]
-    try:
-        for line, cells in enumerate(chosen.iter_rows(values_only=True), 1):
-            if line > MOST_ROWS:
-                raise refused(f"the sheet has more than {MOST_ROWS} rows", file=name)
-            if any(cell is not None and str(cell).strip() for cell in cells):
-                yield line, list(cells)
-    except Refused:
-        raise
-    except Exception as error:
-        raise _not_a_sheet(name, error) from None
-
-
-def _refuse_bomb(name: str, content: bytes) -> None:
-    try:
-        with zipfile.ZipFile(io.BytesIO(content)) as archive:
-            unpacked = sum(item.file_size for item in archive.infolist())
-    except (zipfile.BadZipFile, ValueError, OSError) as error:
-        raise _not_a_sheet(name, error) from None
-    if unpacked > LARGEST_SHEET or unpacked > MOST_SHRUNK * max(len(content), 10_000):
-        raise refused(
-            f"{name} would unpack to {unpacked / 1e6:.0f} MB, which no table needs",
-            file=name,
-            expected="an XLSX file of ordinary size",
+    def _bad_row(self, line: int, error: csv.Error) -> Refused:
+        return refused(
+            f"line {line} is not a table row: {error}; check its quotation marks",
+            file=self.name,
+            line=line,
+            expected="cells separated by one delimiter",
         )
 
 
-def _not_a_sheet(name: str, error: Exception) -> Refused:
-    return refused(
-        f"{name} looks like an XLSX file but cannot be read ({type(error).__name__}); save it "
-        "again or export it as CSV",
-        file=name,
-        expected="an XLSX or CSV file",
-    )
+class _Again:
+    """Lines already taken from a text, then the rest of it."""
+
+    def __init__(self, first: list[str], rest: _Text) -> None:
+        self._first = first
+        self._rest = rest
+
+    def __iter__(self) -> Iterator[str]:
+        return self
+
+    def __next__(self) -> str:
+        if self._first:
+            return self._first.pop(0)
+        return next(self._rest)

@@ -12,20 +12,37 @@ import re
 from collections.abc import Callable, Mapping
 from dataclasses import dataclass
 from datetime import date, datetime
-from typing import Any
+from typing import Any, NamedTuple
 
 from campaign.errors import Refused
 from campaign.ledger.fields import CONFIGURATIONS, clean_text
-from campaign.ledger.flat.headers import COLUMNS
+from campaign.ledger.flat.headers import COLUMNS, shown
 from campaign.ledger.quantities import MAY_BE_ABSENT
 
 
-@dataclass(frozen=True, slots=True)
-class Value:
-    """A fitted value with its standard error, in canonical units; value None means absent."""
+class Value(NamedTuple):
+    """A fitted value with its standard error, in canonical units; value None means absent.
+
+    A named tuple, because a table of 100,000 rows makes a million of them.
+    """
 
     value: float | None
     se: float | None = None
+
+    @property
+    def absent(self) -> bool:
+        """Whether the arc was looked for and is not there."""
+        return self.value is None
+
+
+@dataclass(frozen=True)
+class Uncalculated:
+    """A spreadsheet's formula whose result the file does not hold."""
+
+    formula: str
+
+    def __str__(self) -> str:
+        return self.formula
 
 
 class ValueFault(ValueError):
@@ -64,6 +81,9 @@ BOUNDS: Mapping[str, Bounds] = {
        for name in ("n_sl", "n_ct", "n_lat")},
 }  # fmt: skip
 
+# Results of a spreadsheet's formula that went wrong.
+SHEET_ERRORS = ("#N/A", "#DIV/0!", "#REF!", "#VALUE!", "#NAME?", "#NUM!", "#NULL!")
+
 _NUMBER = r"[+-]?(?:\d+(?:\.\d*)?|\.\d+)"
 _EXPONENT = r"(?:[eE][+-]?\d{1,3})?"
 _PLAIN = re.compile(_NUMBER + _EXPONENT, re.ASCII)
@@ -94,19 +114,20 @@ def with_uncertainty(text: str) -> tuple[float, float | None]:
     """
     if _PLAIN.fullmatch(text):
         return plain_number(text), None
-    match = _PLUS_MINUS.fullmatch(text)
+    match = _PLUS_MINUS.fullmatch(text) if len(text) <= LONGEST else None
     if match:
         opening, value, error, closing, power = match.groups()
         if bool(opening) != bool(closing) or (power and not opening):
             raise ValueError
         factor = float(f"1{power}") if power else 1.0
         return _finite(plain_number(value) * factor), _finite(plain_number(error) * factor)
-    match = _CONCISE.fullmatch(text)
+    match = _CONCISE.fullmatch(text) if len(text) <= LONGEST else None
     if match:
         value, error, power = match.groups()
-        factor = float(f"1{power}") if power else 1.0
-        place = 1.0 if "." in error else 10.0 ** -len(value.partition(".")[2])
-        return _finite(float(value) * factor), _finite(float(error) * place * factor)
+        # The digits in brackets stand for the last digits of the value [1].
+        last = 0 if "." in error else -len(value.partition(".")[2])
+        exponent = last + int(power[1:] or 0)
+        return _finite(float(value + power)), _finite(float(f"{error}e{exponent}"))
     raise ValueError
 
 
@@ -116,28 +137,33 @@ def _finite(number: float) -> float:
     return number
 
 
+# Spaces that typesetting puts into numbers, and the minus sign.
+_PLAINER = str.maketrans({"−": "-", "\u00a0": None, "\u202f": None, "\u2009": None})
+
+
+class OtherMark(ValueError):
+    """A number is written with another decimal mark than its file."""
+
+
 def as_point(text: str, decimal: str) -> str:
-    """Return a number's text with a decimal point and an ASCII minus; raises ValueError."""
-    text = text.strip().replace("−", "-").replace("\u00a0", "").replace("\u202f", "")
-    if len(text) > LONGEST:
-        raise ValueError
-    if decimal == ",":
-        if "." in text:
-            raise ValueError
-        return text.replace(",", ".")
-    if "," in text:
-        raise ValueError
-    return text
+    """Return a number's text with a decimal point and an ASCII minus; raises OtherMark."""
+    text = text.strip()
+    if not text.isascii():
+        text = text.translate(_PLAINER)
+    other = "." if decimal == "," else ","
+    if other in text:
+        raise OtherMark
+    return text.replace(",", ".")
 
 
-def in_bounds(name: str, number: float, shown: object) -> float:
+def in_bounds(name: str, number: float, given: object) -> float:
     """Return a number in canonical units after checking its range; raises ValueFault."""
     bounds = BOUNDS.get(name)
     if bounds is None:
         return number
     low = number <= bounds.low if bounds.above else number < bounds.low
     if low or number > bounds.high or not math.isfinite(number):
-        raise ValueFault(f"{name} is {shown}, which is out of range", bounds.text)
+        raise ValueFault(f"{name} is {shown(given, 60)}, which is out of range", bounds.text)
     return number
 
 
@@ -145,9 +171,8 @@ def _text(name: str, given: Any) -> str:
     if isinstance(given, float) and given.is_integer():
         given = int(given)  # a spreadsheet's 7 is the label 7
     text = str(given)
-    # Written with a guard against spreadsheets that would run it; see writing.py.
-    if len(text) > 1 and text[0] == "'" and text[1] in "=+-@":
-        text = text[1:]
+    if text.strip() in SHEET_ERRORS:
+        raise ValueFault(f"{name} is the error {text.strip()} of a spreadsheet", "a text")
     try:
         return clean_text(text, name)
     except Refused as error:
@@ -156,13 +181,22 @@ def _text(name: str, given: Any) -> str:
 
 
 def _choice(name: str, given: Any) -> str:
-    word = "-".join(str(given).strip().lower().replace("-", " ").split())
-    word = {"3-electrode": "three-electrode", "2-electrode": "two-electrode"}.get(word, word)
+    word = "-".join(str(given).lower().replace("-", " ").replace("_", " ").split())
+    word = word.removesuffix("-cell").removesuffix("-configuration").removesuffix("-setup")
+    word = _CONFIGURATION.get(word, word)
     if word not in CONFIGURATIONS:
         raise ValueFault(
-            f"{name} is '{str(given)[:40]}', which is not known", "one of " + ", ".join(CONFIGURATIONS)
+            f"{name} is '{shown(given, 40)}', which is not known",
+            "one of " + ", ".join(CONFIGURATIONS),
         )
     return word
+
+
+_CONFIGURATION = {
+    "3-electrode": "three-electrode", "three-electrodes": "three-electrode",
+    "2-electrode": "two-electrode", "two-electrodes": "two-electrode",
+    "symmetrical": "symmetric",
+}  # fmt: skip
 
 
 def _ion(name: str, given: Any) -> Any:
@@ -175,17 +209,22 @@ def _ion(name: str, given: Any) -> Any:
         raise ValueFault(fault.message, fault.expected or "an ion such as Na") from None
 
 
-def _reference(name: str, given: Any) -> str:
+def read_reference(name: str, given: Any) -> str:
+    """Return the one spelling of a reference electrode; raises ValueFault."""
     from campaign.chemistry.references import canonical_reference
 
-    return canonical_reference(_text(name, given))
+    try:
+        return canonical_reference(_text(name, given))
+    except Refused as error:
+        fault = error.faults[0]
+        raise ValueFault(fault.message, fault.expected or "a reference electrode") from None
 
 
 WORDS: Mapping[str, Callable[[str, Any], Any]] = {
     "text": _text,
     "choice": _choice,
     "ion": _ion,
-    "reference": _reference,
+    "reference": read_reference,
 }
 
 
@@ -199,7 +238,7 @@ def instant_reader(zone: str) -> Callable[[str, Any], Any]:
         try:
             return parse_instant(given if isinstance(given, datetime) else str(given), zone)
         except InstantError as error:
-            raise ValueFault(f"{name} is '{str(given)[:60]}': {error}", error.expected) from None
+            raise ValueFault(f"{name} is '{shown(given, 60)}': {error}", error.expected) from None
 
     return read
 
