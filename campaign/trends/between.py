@@ -50,26 +50,28 @@ def lone(stratum: IntArray, level: IntArray) -> BoolArray:
     return np.asarray(levels_per_stratum(stratum, level) < 2, np.bool_)
 
 
-def fit(s: Sample, X: npt.ArrayLike, stratum: IntArray, by_cell: bool = False) -> BetweenFit:
+def fit(
+    s: Sample, X: npt.ArrayLike, stratum: IntArray, by_cell: Reduced | None = None
+) -> BetweenFit:
     """Fit ln R of the sample on the columns X (n, p). Raises NoContrast.
 
-    by_cell: bring the readings to one effect a cell first, which is quicker. So it is always
-    with moved specimens or more strata than MANY_STRATA. Where all cells that share strata
-    were measured under the same conditions the estimates are the same either way; else they
-    differ by what cells tell of strata, a small part of the standard error.
+    by_cell: the sample brought to one effect a cell by `reduced`, which is quicker. So it is
+    always with moved specimens or more strata than MANY_STRATA. Where all cells that share
+    strata were measured under the same conditions the estimates are the same either way; else
+    they differ by what cells tell of strata, a small part of the standard error.
     """
     if len(s) < 2:
         raise NoContrast("fewer than two readings")
     columns = np.asarray(X, np.float64).reshape(len(s), -1)
     codes = combine(stratum)
-    several = not one_row_a_cell(s)
-    if several and (by_cell or moved(s) or int(codes.max()) >= MANY_STRATA):
+    r = by_cell
+    if r is None and (moved(s) or int(codes.max()) >= MANY_STRATA) and not one_row_a_cell(s):
         r = reduced(s, codes)
-        averaged = np.stack([means(column, r.cell) for column in columns.T], axis=1)
-        mixed = _solved(r.sample, averaged, r.component)
-        return BetweenFit(mixed, r.sigma_within, True)
-    mixed = _solved(s, columns, codes)
-    return BetweenFit(mixed, float(mixed.sigma_within), False)
+    if r is None:
+        mixed = _solved(s, columns, codes)
+        return BetweenFit(mixed, float(mixed.sigma_within), False)
+    averaged = np.stack([means(column, r.cell) for column in columns.T], axis=1)
+    return BetweenFit(_solved(r.sample, averaged, r.component), r.sigma_within, True)
 
 
 def _solved(s: Sample, X: FloatArray, stratum: IntArray) -> MixedFit:

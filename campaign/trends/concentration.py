@@ -17,7 +17,7 @@ from campaign.ledger.readings import FloatArray, IntArray, Snapshot
 from campaign.statistics.estimate import Estimate
 from campaign.trends import between, confounding, heterogeneity, levels
 from campaign.trends.bases import in_activity
-from campaign.trends.between import BetweenFit, NoContrast
+from campaign.trends.between import BetweenFit, NoContrast, Reduced
 from campaign.trends.conditions import electrodes
 from campaign.trends.findings import Contrast, Finding
 from campaign.trends.outliers import outliers
@@ -92,7 +92,7 @@ def order(
 ) -> OrderFit:
     """Fit the common order within strata of temperature, state and the `held` columns.
 
-    by_cell: see `between.fit`.
+    by_cell: fit one effect a cell, see `between.fit`.
     Raises NoContrast with a reason where no stratum holds two concentrations.
     """
     with np.errstate(invalid="ignore"):
@@ -112,8 +112,9 @@ def order(
     x, level, stratum = x[~keep], combine(level[~keep]), combine(stratum[~keep])
     concentrations = levels.medians(s.c.concentration, level)
     group = combine(*(getattr(s.c, name) for name in held)) if held else np.zeros_like(level)
-    fitted = between.fit(s, x[:, None], stratum, by_cell)
-    parts = _Parts(x, level, concentrations, stratum, group, tuple(held), by_cell)
+    cells = between.reduced(s, stratum) if by_cell else None
+    fitted = between.fit(s, x[:, None], stratum, cells)
+    parts = _Parts(x, level, concentrations, stratum, group, tuple(held), cells)
     result = _judge(s, fitted, parts, criteria)
     if result.adjusted is None and age_adjusted:
         held_too = confounding.requested(s)
@@ -132,7 +133,7 @@ class _Parts:
     stratum: IntArray
     group: IntArray
     held: tuple[str, ...]
-    by_cell: bool
+    cells: Reduced | None
 
 
 def _judge(s: Sample, fitted: BetweenFit, p: _Parts, criteria: Criteria) -> OrderFit:
@@ -169,7 +170,7 @@ def _negative(e: Estimate) -> Estimate:
 def _levels(s: Sample, p: _Parts) -> tuple[tuple[Contrast, ...], float | None]:
     """Return level-to-level differences of ln R and the p value of lack of fit."""
     names = [f"{value:.6g}" for value in p.concentrations]
-    fitted = levels.fit_levels(s, p.level, p.stratum, by_cell=p.by_cell)
+    fitted = levels.fit_levels(s, p.level, p.stratum, by_cell=p.cells)
     contrasts = levels.all_pairs(fitted, names)
     medians_of_x = levels.medians(p.x, p.level)
     return contrasts, heterogeneity.lack_of_fit(fitted, contrasts, medians_of_x)
@@ -188,7 +189,9 @@ def _splits(s: Sample, slope: float, p: _Parts, criteria: Criteria) -> list[hete
                 s.c.name(c, int(getattr(s.c, c)[at])) for c in ("salt", "solvents", "additives")
             )
 
-        found.append(heterogeneity.order_by_group(s, p.x, p.stratum, p.group, margin, name))
+        found.append(
+            heterogeneity.order_by_group(s, p.x, p.stratum, p.group, margin, name, p.cells)
+        )
     found += heterogeneity.within_axes(
         s, -p.x[:, None], p.group, np.array([slope]), margin, ["order {:.2f}"]
     )

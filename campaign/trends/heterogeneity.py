@@ -15,7 +15,7 @@ import numpy as np
 
 from campaign.ledger.readings import FloatArray, IntArray
 from campaign.trends import between, levels
-from campaign.trends.between import NoContrast
+from campaign.trends.between import NoContrast, Reduced
 from campaign.trends.findings import Contrast
 from campaign.trends.sample import Sample
 from campaign.trends.strata import centred, combine, means
@@ -67,16 +67,22 @@ def _equal(fit: between.BetweenFit, rows: FloatArray) -> tuple[float, list[float
 
 
 def order_by_group(
-    s: Sample, x: FloatArray, stratum: IntArray, group: IntArray, margin: float, name: Named
-) -> Split | None:
-    """Test whether the slope -d ln R/dx [1] is the same in every group of strata."""
+    s: Sample, x: FloatArray, stratum: IntArray, group: IntArray, margin: float, name: Named,
+    cells: Reduced | None = None,
+) -> Split | None:  # fmt: skip
+    """Test whether the slope -d ln R/dx [1] is the same in every group of strata.
+
+    cells: the sample brought to one effect a cell, where it is at hand.
+    """
     inside = centred(x, stratum)
     spread = np.bincount(group, inside**2)
     groups = np.flatnonzero(spread > 1e-12)
     if len(groups) < 2:
         return None
     keep = np.isin(group, groups)
-    r = between.reduced(s.take(keep), combine(stratum[keep]))
+    r = cells
+    if r is None or not keep.all():
+        r = between.reduced(s.take(keep), combine(stratum[keep]))
     codes = combine(group[keep])[r.first]
     X = (codes[:, None] == np.arange(len(groups))[None, :]) * x[keep][r.first, None]
     try:
@@ -90,12 +96,16 @@ def order_by_group(
 def differences_by_group(
     s: Sample, level: IntArray, stratum: IntArray, group: IntArray, margin: float, name: Named,
     text: Callable[[int, int], str], shown: Callable[[float], float],
+    cells: Reduced | None = None,
 ) -> Split | None:  # fmt: skip
-    """Test whether level differences of y are the same in every group of strata."""
+    """Test whether level differences of y are the same in every group of strata.
+
+    cells: the sample brought to one effect a cell, where it is at hand.
+    """
     if int(group.max()) == 0:
         return None
     n_levels = int(level.max()) + 1
-    r = between.reduced(s, combine(stratum))
+    r = between.reduced(s, combine(stratum)) if cells is None else cells
     both = (group * n_levels + level)[r.first]
     try:
         fitted = levels.fit_levels(r.sample, both, r.component)

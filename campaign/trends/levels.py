@@ -10,7 +10,7 @@ import numpy as np
 
 from campaign.ledger.readings import FloatArray, IntArray
 from campaign.trends import between
-from campaign.trends.between import BetweenFit
+from campaign.trends.between import BetweenFit, Reduced
 from campaign.trends.findings import Contrast
 from campaign.trends.sample import Sample
 from campaign.trends.strata import combine, components, match
@@ -50,7 +50,7 @@ def fit_levels(
     level: IntArray,
     stratum: IntArray,
     covariates: FloatArray | None = None,
-    by_cell: bool = False,
+    by_cell: Reduced | None = None,
 ) -> LevelFit:
     """Fit one effect a level (codes 0..k-1) within strata. Raises NoContrast.
 

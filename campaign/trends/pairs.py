@@ -17,7 +17,7 @@ from campaign.ledger.readings import FloatArray, IntArray, Snapshot
 from campaign.statistics.equivalence import simultaneous_interval
 from campaign.statistics.estimate import Estimate
 from campaign.trends import between, confounding, heterogeneity, levels
-from campaign.trends.between import NoContrast
+from campaign.trends.between import NoContrast, Reduced
 from campaign.trends.conditions import electrodes
 from campaign.trends.findings import Axis, Contrast, Family, Finding
 from campaign.trends.levels import LevelFit
@@ -113,7 +113,7 @@ def estimate(
 def compare(s: Sample, criteria: Criteria, how: Comparison, by_cell: bool = False) -> PairsFit:
     """Compare the levels of a recipe column within strata of everything else.
 
-    by_cell: see `between.fit`.
+    by_cell: fit one effect a cell, see `between.fit`.
     Raises NoContrast with a reason where no stratum holds two levels.
     """
     if not len(s):
@@ -130,7 +130,8 @@ def compare(s: Sample, criteria: Criteria, how: Comparison, by_cell: bool = Fals
     stratum, held = combine(stratum[~lone]), combine(held[~lone])
     codes = np.unique(level[~lone])
     names = [s.c.name(how.column, int(code)) for code in codes]
-    parts = _Parts(np.searchsorted(codes, level[~lone]), stratum, held, names, by_cell)
+    cells = between.reduced(s, stratum) if by_cell else None
+    parts = _Parts(np.searchsorted(codes, level[~lone]), stratum, held, names, cells)
     return _judge(s, parts, criteria, how)
 
 
@@ -142,7 +143,7 @@ class _Parts:
     stratum: IntArray
     held: IntArray
     names: list[str]
-    by_cell: bool
+    cells: Reduced | None
 
 
 def _held(s: Sample, how: Comparison) -> IntArray:
@@ -151,7 +152,7 @@ def _held(s: Sample, how: Comparison) -> IntArray:
 
 
 def _judge(s: Sample, p: _Parts, criteria: Criteria, how: Comparison) -> PairsFit:
-    fitted = levels.fit_levels(s, p.level, p.stratum, by_cell=p.by_cell)
+    fitted = levels.fit_levels(s, p.level, p.stratum, by_cell=p.cells)
     contrasts, family, count = _contrasts(fitted, p.names, how)
     warnings = list(s.warnings)
     if s.n_specimens == 1:
@@ -214,6 +215,7 @@ def _splits(
             name,
             lambda a, b: how.text(p.names[a], p.names[b]),
             how.shown,
+            p.cells,
         )
     ]
     group = fitted.groups[0]
