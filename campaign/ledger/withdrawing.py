@@ -79,7 +79,7 @@ def end_parts(connection: Connection, entry: Entry, kind: str, row_id: int) -> N
             select(part).where(part.c[column] == row_id, in_force(part))
         ).mappings()
         for item in rows.all():
-            entry.end(part, item)
+            entry.end(part, dict(item))
 
 
 def _counts(entry: Entry) -> dict[str, int]:
@@ -203,17 +203,27 @@ def _records(connection: Connection, table: Table, ids: set[int]) -> set[int]:
     return {record for number, record in rows if number in ids}
 
 
-
-
 def _bring_back(pen: Pen, entry: Entry, import_entry: int) -> None:
-    """Make the fits that the import had superseded current again, as new rows."""
+    """Make the fits that the import had superseded current again, as new rows.
+
+    Only where the import's own fit was still current: what was refitted or withdrawn since
+    stays as it is.
+    """
     fit, value = schema.fit, schema.fitted_value
     gone = {key[0] for key in entry.ended.get("measurement", ())}
+    ended = {key[0] for key in entry.ended.get("fit", ())}
+    freed = {
+        measurement
+        for number, measurement in pen.connection.execute(
+            select(fit.c.id, fit.c.measurement).where(in_force(fit))
+        )
+        if number in ended
+    }
     superseded = pen.connection.execute(
         select(fit).where(fit.c.ended_by == import_entry)
     ).mappings()
     for row in superseded.all():
-        if row["measurement"] in gone:
+        if row["measurement"] in gone or row["measurement"] not in freed:
             continue
         kept = {k: v for k, v in row.items() if k not in ("id", "entry", "ended_by")}
         made = pen.make(entry, fit, kept)
