@@ -10,7 +10,9 @@ import typer
 from campaign.cli import (
     add,
     amend,
+    backup,
     check,
+    copy,
     criteria,
     demo,
     explain,
@@ -23,6 +25,7 @@ from campaign.cli import (
     summary,
     template,
     trend,
+    upgrade,
     withdraw,
 )
 from campaign.errors import Fault, Refused, refused
@@ -51,12 +54,13 @@ def _campaign(
         os.environ["CAMPAIGN_DB"] = db
 
 
-START, RECORD, CORRECT, ASK, ANSWER = (
+START, RECORD, CORRECT, ASK, ANSWER, KEEP = (
     "Start",
     "Record",
     "Correct",
     "Look up",
     "Read the answer",
+    "Keep safe",
 )
 
 app.command("init", rich_help_panel=START)(init.init)
@@ -72,6 +76,9 @@ app.command("list", rich_help_panel=ASK)(listing.list_records)
 app.command("show", rich_help_panel=ASK)(show.show)
 app.command("history", rich_help_panel=ASK)(history.history)
 app.command("check", rich_help_panel=ASK)(check.check)
+app.command("backup", rich_help_panel=KEEP)(backup.backup)
+app.command("copy", rich_help_panel=KEEP)(copy.copy)
+app.command("upgrade", rich_help_panel=KEEP)(upgrade.upgrade)
 app.command("trend", rich_help_panel=ANSWER)(trend.trend)
 app.command("summary", rich_help_panel=ANSWER)(summary.summary)
 app.command("explain", rich_help_panel=ANSWER)(explain.explain)

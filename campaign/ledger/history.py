@@ -5,7 +5,7 @@ from __future__ import annotations
 import json
 from typing import TYPE_CHECKING, Any
 
-from sqlalchemy import or_, select
+from sqlalchemy import func, or_, select
 
 from campaign.ledger import schema
 
@@ -67,3 +67,13 @@ def head(connection: Connection) -> Row | None:
         .first()
     )
     return None if row is None else {"entry": row["id"], "at": row["at"], "hash": row["hash"]}
+
+
+def size(connection: Connection) -> tuple[int, int]:
+    """Return how many journal entries and ledgered rows a campaign holds."""
+    entries = connection.execute(select(func.count()).select_from(schema.journal)).scalar() or 0
+    rows = sum(
+        connection.execute(select(func.count()).select_from(table)).scalar() or 0
+        for table in schema.JOURNALLED
+    )
+    return entries, rows

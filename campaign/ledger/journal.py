@@ -101,6 +101,7 @@ class Entry:
     after: Row = field(default_factory=dict)
     made: dict[str, list[Row]] = field(default_factory=dict)
     ended: dict[str, list[tuple[Any, ...]]] = field(default_factory=dict)
+    always: bool = False  # written even though it makes and ends no row
 
     def end(self, table: Table, row: Mapping[str, Any]) -> None:
         """Mark a stored row as ended by this entry."""
@@ -108,7 +109,7 @@ class Entry:
         self.ended.setdefault(table.name, []).append(key)
 
     def __bool__(self) -> bool:
-        return bool(self.made or self.ended)
+        return self.always or bool(self.made or self.ended)
 
 
 @dataclass

@@ -21,18 +21,19 @@ def start(given: str | None, zone: str = "UTC", who: str | None = None) -> Place
     check_zone(zone)
     where = place(given)
     if where.path is not None:
-        _refuse_taken(where.path)
+        refuse_taken(where.path)
     fresh = where.path is not None
     try:
         _build(where, zone, who)
     except BaseException:
         if fresh and where.path is not None:
-            _remove(where.path)
+            discard(where.path)
         raise
     return where
 
 
-def _refuse_taken(path: Path) -> None:
+def refuse_taken(path: Path) -> None:
+    """Raise Refused where a new database cannot be made at a path."""
     try:
         path.stat()
     except OSError as error:
@@ -50,8 +51,7 @@ def _refuse_taken(path: Path) -> None:
         )
     if path.exists():
         raise refused(
-            f"there is a file at {path} already and it is left as it is; name another one with "
-            "--db",
+            f"there is a file at {path} already and it is left as it is; name another file",
             value=path,
             expected="a file that does not exist yet",
         )
@@ -67,9 +67,7 @@ def _build(where: Place, zone: str, who: str | None) -> None:
     from campaign.ledger.migrating import migrate
 
     database = Database(where, create=True)
-    if database.dialect == "sqlite":
-        with database.engine.connect() as connection:
-            connection.exec_driver_sql("PRAGMA journal_mode = WAL")
+    use_write_ahead_log(database)
     with writing(database, who=who) as pen:
         if revision(pen.connection) is not None:
             raise refused(
@@ -82,6 +80,14 @@ def _build(where: Place, zone: str, who: str | None) -> None:
         pen.make(entry, schema.setting, {"name": "zone", "value": zone})
 
 
-def _remove(path: Path) -> None:
+def use_write_ahead_log(database: Database) -> None:
+    """Let queries run while a measurement is logged (SQLite; kept in the file)."""
+    if database.dialect == "sqlite":
+        with database.engine.connect() as connection:
+            connection.exec_driver_sql("PRAGMA journal_mode = WAL")
+
+
+def discard(path: Path) -> None:
+    """Remove a database that was being made, with what SQLite keeps beside it."""
     for name in (path, Path(f"{path}-wal"), Path(f"{path}-shm")):
         name.unlink(missing_ok=True)
