@@ -117,6 +117,15 @@ def of_electrode(snapshot: Snapshot, electrode: str) -> Snapshot:
     return keep(snapshot, snapshot.readings.electrode == electrode)
 
 
+def part_of(snapshot: Snapshot, criteria: Criteria, diagnosis: Diagnosis) -> Snapshot:
+    """Return the readings that a diagnosis rests on: its electrode's, or those of its group."""
+    whole = of_electrode(snapshot, diagnosis.electrode)
+    by = next(iter(diagnosis.group), None)
+    return next(
+        part for group, part in split(whole, criteria, by) if group == dict(diagnosis.group)
+    )
+
+
 def keep(snapshot: Snapshot, rows: BoolArray) -> Snapshot:
     """Return the snapshot with the readings of a boolean mask only."""
     return replace(snapshot, readings=snapshot.readings.take(np.asarray(rows, dtype=bool)))
