@@ -24,6 +24,7 @@ from campaign.cli import (
     show,
     summary,
     template,
+    timeline,
     trend,
     upgrade,
     withdraw,
@@ -82,6 +83,7 @@ app.command("upgrade", rich_help_panel=KEEP)(upgrade.upgrade)
 app.command("trend", rich_help_panel=ANSWER)(trend.trend)
 app.command("summary", rich_help_panel=ANSWER)(summary.summary)
 app.command("explain", rich_help_panel=ANSWER)(explain.explain)
+app.command("timeline", rich_help_panel=ANSWER)(timeline.timeline)
 
 
 def main() -> None:

@@ -1,0 +1,40 @@
+"""campaign timeline"""
+
+from __future__ import annotations
+
+from enum import Enum
+from typing import Annotated
+
+import typer
+
+from campaign.cli.options import Asked, query
+
+
+class Clock(str, Enum):
+    """By when a reading was entered, or by when it was measured."""
+
+    logged = "logged"
+    measured = "measured"
+
+
+@query
+def timeline(
+    asked: Asked,
+    every: Annotated[
+        str, typer.Option("--every", metavar="PERIOD", help="week, month, quarter or Nd.")
+    ] = "month",
+    clock: Annotated[
+        Clock | None, typer.Option("--clock", help="By entry or by measurement.")
+    ] = None,
+) -> None:
+    """Show verdicts as they stood at the end of each period: when settled, whether flipped.
+
+    Example: campaign timeline --every quarter --clock measured
+    """
+    from campaign.diagnosis.reading import followed
+    from campaign.present.timeline import show_timeline
+
+    found = followed(
+        asked.db, asked.filter, every=every, clock=clock.value if clock is not None else None
+    )
+    show_timeline(found, as_json=asked.json, as_csv=asked.csv, stated=asked.stated())
