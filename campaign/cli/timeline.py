@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from enum import Enum
+from enum import StrEnum
 from typing import Annotated
 
 import typer
@@ -10,7 +10,7 @@ import typer
 from campaign.cli.options import Asked, query
 
 
-class Clock(str, Enum):
+class Clock(StrEnum):
     """By when a reading was entered, or by when it was measured."""
 
     logged = "logged"

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import math
-from collections.abc import Iterator, Sequence
+from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import dataclass, replace
 from typing import Final, Literal
 
@@ -11,8 +11,9 @@ import numpy as np
 
 from campaign.diagnosis.budget import TERMS
 from campaign.diagnosis.signatures import AXES
-from campaign.diagnosis.summary import EvidenceSource, Outcome, keep, levels, settle
-from campaign.diagnosis.wording import Decider, largest
+from campaign.diagnosis.summary import EvidenceSource, keep, levels, settle, settle_word
+from campaign.diagnosis.verdict import Judged
+from campaign.diagnosis.wording import Decider, is_testable, largest
 from campaign.ledger.criteria import LIMITS, Criteria
 from campaign.ledger.readings import BoolArray, Readings, Snapshot
 from campaign.statistics.estimate import Estimate
@@ -32,7 +33,8 @@ LARGEST_ALPHA: Final = 0.49
 
 TRIED: Final = (
     "order_margin", "ratio_margin", "barrier_margin_kJ_mol", "error_probability",
-    "potential_window_V", "working_time_s",
+    "potential_window_V", "working_time_s", "temperature_tolerance_K", "potential_tolerance_V",
+    "content_tolerance", "confounding_r", "heterogeneity_p",
 )  # fmt: skip
 
 
@@ -79,33 +81,58 @@ def robustness(
 ) -> Robustness:
     """Leave out one specimen, one stratum level, and move each criterion by a quarter.
 
-    snapshot holds one electrode's readings. Slow: one full diagnosis for each trial.
+    snapshot holds one electrode's readings. Slow: one diagnosis for each trial. Influence is
+    told of the axes that carry the verdict.
     """
     base = settle(snapshot, criteria, electrode, source, terms)
     word = base.verdict.word
     changes: list[Change] = []
     influences: list[Influence] = []
     readings = snapshot.readings
+
+    def tried(kind: Kind, what: str, part: Snapshot, moved: Criteria) -> None:
+        after = settle_word(part, moved, electrode, source, terms)
+        changes.append(Change(kind, what, after, after != word))
+
+    axes = carrying(base.dominant, criteria.error_probability) if base.dominant else ()
     for specimen in sorted(set(readings.specimen.tolist())):
         mine = readings.specimen == specimen
         if mine.all():
             continue
-        outcome = settle(keep(snapshot, ~mine), criteria, electrode, source, terms)
-        changes.append(_change("specimen", specimen, outcome, word))
-        influences += _influences(specimen, base, outcome, readings, mine)
+        part = keep(snapshot, ~mine)
+        tried("specimen", specimen, part, criteria)
+        if base.dominant is not None:
+            found = source(part, criteria, electrode, base.dominant.response)
+            influences += _influences(specimen, axes, base.dominant, found, readings, mine)
     for name, rows in strata(readings, criteria):
         if not rows.all():
-            outcome = settle(keep(snapshot, ~rows), criteria, electrode, source, terms)
-            changes.append(_change("stratum", name, outcome, word))
+            tried("stratum", name, keep(snapshot, ~rows), criteria)
     for name, moved in criteria_tried(criteria):
-        outcome = settle(snapshot, moved, electrode, source, terms)
-        changes.append(_change("criterion", name, outcome, word))
+        tried("criterion", name, snapshot, moved)
     influences.sort(key=lambda one: -one.shift)
     return Robustness(word, tuple(changes), tuple(influences))
 
 
-def _change(kind: Kind, what: str, outcome: Outcome, word: str) -> Change:
-    return Change(kind, what, outcome.verdict.word, outcome.verdict.word != word)
+def carrying(judged: Judged, alpha: float) -> tuple[str, ...]:
+    """Return the axes that carry a verdict, in the order of the table.
+
+    Those of required predictions that were decided, and those on which a step that stands
+    was confirmed; where nothing was decided, all that required predictions ask for.
+    """
+    asked = {axis for one in judged.assessments for p in one.step.required for axis in p.axes}
+    confirmed = {
+        axis
+        for one in judged.assessments
+        if one.status != "eliminated"
+        for axis in one.discriminating
+    }
+    tested = [axis for axis in AXES if is_testable(judged.evidence.get(axis))]
+    decided = [
+        axis
+        for axis in tested
+        if axis in asked | confirmed and judged.evidence[axis].decision(alpha) != "open"
+    ]
+    return tuple(decided or [axis for axis in tested if axis in asked])
 
 
 def strata(readings: Readings, criteria: Criteria) -> Iterator[tuple[str, BoolArray]]:
@@ -140,14 +167,16 @@ def criteria_tried(criteria: Criteria) -> Iterator[tuple[str, Criteria]]:
 
 
 def _influences(
-    specimen: str, base: Outcome, outcome: Outcome, readings: Readings, mine: BoolArray
+    specimen: str,
+    axes: Sequence[str],
+    before: Judged,
+    after: Mapping[str, Decider],
+    readings: Readings,
+    mine: BoolArray,
 ) -> Iterator[Influence]:
-    before, after = base.dominant, outcome.dominant
-    if before is None or after is None or before.response != after.response:
-        return
     measurements = tuple(int(one) for one in readings.measurement[mine])
-    for axis in AXES:
-        shift = _shift(before.evidence.get(axis), after.evidence.get(axis))
+    for axis in axes:
+        shift = _shift(before.evidence.get(axis), after.get(axis))
         if shift is not None:
             yield Influence(specimen, axis, shift, measurements)
 

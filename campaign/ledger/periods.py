@@ -57,7 +57,7 @@ def periods(first: str, last: str, every: Every, zone: str) -> list[Period]:
     place = ZoneInfo(zone)
     begin = datetime.fromisoformat(first).astimezone(place).date()
     stop = datetime.fromisoformat(last).astimezone(place).date()
-    found = []
+    found: list[Period] = []
     for start, following in _spans(begin, every):
         if len(found) == MOST:
             raise refused(
