@@ -50,9 +50,23 @@ def trend(
         typer.Option("--scale", metavar="REF", help="Compare potentials on this scale."),
     ] = None,
     without: Annotated[
-        list[int] | None,
-        typer.Option("--without", metavar="NO", help="Leave this measurement out; repeatable."),
+        list[str] | None,
+        typer.Option(
+            "--without", metavar="ID", help="Leave a measurement or specimen out; repeatable."
+        ),
     ] = None,
+    activity: Annotated[
+        bool, typer.Option("--activity", help="Concentration: the order in the activity.")
+    ] = False,
+    age_adjusted: Annotated[
+        bool, typer.Option("--age-adjusted", help="Concentration: beside it, with age held.")
+    ] = False,
+    donor: Annotated[
+        bool, typer.Option("--donor", help="Solvent: also against the donor number.")
+    ] = False,
+    together: Annotated[
+        bool, typer.Option("--together", help="Potential: all electrolytes as one series.")
+    ] = False,
 ) -> None:
     """Rebuild a trend: how a resistance depends on one axis, all else held.
 
@@ -69,6 +83,12 @@ def trend(
         porous=not apparent,
         scale=scale,
         without=without or (),
+        more={
+            "activity": activity,
+            "age_adjusted": age_adjusted,
+            "donor": donor,
+            "together": together,
+        },
     )
     show_trend(
         result, as_json=asked.json, as_csv=asked.csv, rows=rows, stated=asked.stated()

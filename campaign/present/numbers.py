@@ -48,8 +48,16 @@ def with_interval(
     if interval is None:
         return f"{significant(value, 3)} (no interval)"
     low, high = interval
-    decimals = min(decimals_of((high - low) / 2, digits), 6)
-    return f"{value:.{decimals}f} ({low:.{decimals}f} to {high:.{decimals}f})"
+    narrow = min(value - low, high - value)
+    decimals = min(decimals_of(narrow if narrow > 0 else (high - low) / 2, digits), 6)
+    shown = (_fixed(number, decimals) for number in (value, low, high))
+    return "{} ({} to {})".format(*shown)
+
+
+def _fixed(value: float, decimals: int) -> str:
+    """Return a number with fixed decimals, never as a negative zero."""
+    text = f"{value:.{decimals}f}"
+    return text.lstrip("-") if float(text) == 0 else text
 
 
 def with_error(value: float | None, error: float | None) -> str:
@@ -65,3 +73,13 @@ def with_error(value: float | None, error: float | None) -> str:
 def share(value: float | None) -> str:
     """Return a share as a whole percentage."""
     return "" if value is None or math.isnan(value) else f"{100 * value:.0f} %"
+
+
+def percent(value: float | None, interval: Sequence[float] | None) -> str:
+    """Return a share as a percentage without its sign, with its interval: '79 (72 to 86)'."""
+    if value is None or math.isnan(value):
+        return ""
+    shown = f"{100 * value:.0f}"
+    if interval is None:
+        return shown
+    return f"{shown} ({100 * interval[0]:.0f} to {100 * interval[1]:.0f})"

@@ -100,6 +100,11 @@ def _blend(row: Row) -> str:
     return row["solvents"] if additives == "none" else f"{row['solvents']} + {additives}"
 
 
+def _series(row: Row) -> str:
+    """Return how a remark names the series; an axis over the solvents has none to name."""
+    return f"{row['electrode']}, {_blend(row)}" if row["solvents"] else str(row["electrode"])
+
+
 def _flat(row: Row) -> Row:
     """Return a row for CSV: intervals as two columns, lists joined."""
     flat: Row = {}
@@ -149,17 +154,17 @@ def _donor(found: Sequence[Row]) -> None:
 def _remarks(content: Row, rows: bool) -> None:
     said: list[str] = list(content["warnings"])
     for row in content["estimates"]:
-        said += [f"{row['electrode']}, {_blend(row)}: {text}" for text in row["warnings"]]
+        said += [f"{_series(row)}: {text}" for text in row["warnings"]]
         adjusted = row.get("adjusted")
         if adjusted:
             said.append(
-                f"{row['electrode']}, {_blend(row)}: with {adjusted['for_what']} held it is "
+                f"{_series(row)}: with {adjusted['for_what']} held it is "
                 f"{with_interval(adjusted['value'], adjusted['ci'])}"
             )
         for item in row["outliers"]:
             where = f"measurement {item['measurement']}" if item["measurement"] else "all readings"
             said.append(
-                f"{row['electrode']}, {_blend(row)}: specimen {item['specimen']}, {where}, lies "
+                f"{_series(row)}: specimen {item['specimen']}, {where}, lies "
                 f"{item['residual']:+.1f} studentised residuals off; shown, not dropped"
             )
     for text in dict.fromkeys(said):
@@ -172,4 +177,4 @@ def _remarks(content: Row, rows: bool) -> None:
     if rows:
         for row in content["estimates"]:
             numbers = ", ".join(number(n) for n in row["rows"])
-            print(f"Measurements of {row['electrode']}, {_blend(row)}: {numbers}")
+            print(f"Measurements of {_series(row)}: {numbers}")

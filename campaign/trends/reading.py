@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Sequence
+from collections.abc import Callable, Mapping, Sequence
 from dataclasses import replace
 from importlib import import_module
 from typing import TYPE_CHECKING
@@ -23,6 +23,14 @@ if TYPE_CHECKING:
 
 FilterSource = Callable[["Connection"], Filter]
 
+# What only one axis offers, by the name of its argument there.
+MORE = {
+    "activity": "concentration",
+    "age_adjusted": "concentration",
+    "donor": "solvent",
+    "together": "potential",
+}
+
 AXES = ("concentration", "solvent", "additive", "potential", "temperature", "age")
 
 
@@ -41,13 +49,16 @@ def rebuilt(
     response: str = "R_ct",
     porous: bool = True,
     scale: str | None = None,
-    without: Sequence[int] = (),
+    without: Sequence[str] = (),
+    more: Mapping[str, bool] | None = None,
 ) -> AxisResult:
     """Return the trends of one axis.
 
     porous: solve R_ct from the apparent value of porous electrodes first. scale: compare
-    potentials on this reference's scale. without: record numbers of measurements to leave out.
-    Raises Refused for an unknown axis, response or measurement.
+    potentials on this reference's scale. without: record numbers of measurements, or labels of
+    specimens, to leave out. more: what an axis alone offers (see `MORE`).
+    Raises Refused for an unknown axis, response, measurement or specimen, and for an option
+    the axis does not have.
     """
     if axis not in AXES:
         raise refused(
@@ -55,27 +66,47 @@ def rebuilt(
             value=axis,
             expected=", ".join(AXES),
         )
+    chosen = _chosen(axis, more or {})
     taken, criteria = read_campaign(db, wanted)
-    withheld = len(without)
-    if withheld:
+    before = len(taken.readings)
+    if without:
         taken = _without(taken, without)
     module = import_module(f"campaign.trends.{axis}")
-    result: AxisResult = module.estimate(taken, criteria, response, porous=porous, scale=scale)
+    result: AxisResult = module.estimate(
+        taken, criteria, response, porous=porous, scale=scale, **chosen
+    )
     extra = [LeftOut(reason, count) for reason, count in taken.left_out.items()]
-    if withheld:
-        extra.append(LeftOut("left out with --without", withheld))
+    if without:
+        extra.append(LeftOut("left out with --without", before - len(taken.readings)))
     return replace(result, left_out=(*result.left_out, *extra))
 
 
-def _without(taken: Snapshot, without: Sequence[int]) -> Snapshot:
-    known = set(taken.readings.measurement.tolist())
-    for number in without:
-        if number not in known:
+def _chosen(axis: str, more: Mapping[str, bool]) -> dict[str, bool]:
+    chosen = {name: True for name, wanted in more.items() if wanted}
+    for name in chosen:
+        if MORE[name] != axis:
+            option = name.replace("_", "-")
             raise refused(
-                f"measurement {number} is not among those looked at; 'campaign list measurements' "
-                "shows them",
-                value=number,
-                expected="a measurement's record number",
+                f"--{option} belongs to 'trend {MORE[name]}', not to 'trend {axis}'",
+                column=option,
+                expected=f"trend {MORE[name]}",
             )
-    keep = ~np.isin(taken.readings.measurement, np.array(list(without), dtype=np.int64))
-    return replace(taken, readings=taken.readings.take(keep))
+    return chosen
+
+
+def _without(taken: Snapshot, without: Sequence[str]) -> Snapshot:
+    readings = taken.readings
+    keep = np.ones(len(readings), dtype=bool)
+    for name in without:
+        mine = readings.specimen == name
+        if name.isdigit() and len(name) < 16:
+            mine = mine | (readings.measurement == int(name))
+        if not mine.any():
+            raise refused(
+                f"'{name}' is neither a measurement nor a specimen among those looked at; "
+                "'campaign list measurements' shows them",
+                value=name,
+                expected="a measurement's record number or a specimen's label",
+            )
+        keep &= ~mine
+    return replace(taken, readings=readings.take(keep))
