@@ -143,15 +143,22 @@ class _Entering:
         self.taken: dict[tuple[str, str], FlatRow] = {}
 
     def settle_areas(self, rows: Sequence[FlatRow]) -> list[Fault]:
-        """Turn values per area into values as fitted where the ledger knows the cell's area."""
+        """Turn values per area into values as fitted, with the cell's area in the ledger.
+
+        The area of a new cell may stand in another row, or another file, of the import.
+        """
         faults = []
-        for row in rows:
-            if not row.per_area:
+        waiting = [row for row in rows if row.per_area]
+        areas = _stated_areas(rows) if waiting else {}
+        for row in waiting:
+            label = row.values.get("cell", "")
+            cell = self.book.cells.get(label)
+            area = areas.get(label) if cell is None else cell["area_cm2"]
+            if area is not None:
+                settle_area(row, area)
                 continue
-            cell = self.book.cells.get(row.values.get("cell", ""))
-            if cell is not None:
-                settle_area(row, cell["area_cm2"])
-                continue
+            if "area_cm2" in row.faulty or "cell" in row.faulty:
+                continue  # reported where it was read
             faults.append(
                 _fault(
                     row,
@@ -239,6 +246,8 @@ class _Entering:
             ]
         self.taken[place] = row
         stored = self.stored.get(place)
+        if row.faulty:
+            return []  # nothing will be entered; what was not read is reported already
         if self._unchanged(row):
             return self._keep(row, stored)
         cell = self.book.cells.get(place[0])
@@ -322,6 +331,14 @@ class _Entering:
                 schema.fitted_value,
                 {"fit": made["id"], "quantity": quantity, "value": value, "se": se},
             )
+
+
+def _stated_areas(rows: Iterable[FlatRow]) -> dict[str, float]:
+    areas: dict[str, float] = {}
+    for row in rows:
+        if "cell" in row.values and "area_cm2" in row.values:
+            areas.setdefault(row.values["cell"], row.values["area_cm2"])
+    return areas
 
 
 def fitted(row: FlatRow) -> Values:

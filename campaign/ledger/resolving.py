@@ -28,10 +28,14 @@ CELL = (
 
 @dataclass
 class _Gathered:
-    """What the rows of a table state of one cell or electrode, and where each was first said."""
+    """What the rows of a table state of one cell or electrode, and where each was first said.
+
+    faulty: the columns that some row states and that could not be read.
+    """
 
     label: str
     first: FlatRow
+    faulty: set[str] = field(default_factory=set)
     stated: dict[str, tuple[Any, FlatRow]] = field(default_factory=dict)
 
     def value(self, name: str) -> Any:
@@ -86,7 +90,7 @@ class Resolver:
             label = row.values.get("cell")
             if label is None:
                 continue
-            key = (label, *(row.values.get(n) for n in CELL), *(row.values.get(n) for n in ELECTRODE))
+            key = (label, row.faulty, *(row.values.get(n) for n in (*CELL, *ELECTRODE)))
             if key in seen:
                 continue
             seen.add(key)
@@ -104,6 +108,7 @@ class Resolver:
         self, known: dict[str, _Gathered], label: str, row: FlatRow, names: Iterable[str]
     ) -> None:
         item = known.setdefault(label, _Gathered(label, row))
+        item.faulty |= row.faulty
         for name in names:
             value = self._value(row, name)
             if value is None:
@@ -196,6 +201,8 @@ class Resolver:
     def _make_cell(self, cell: _Gathered, electrodes: Mapping[str, _Gathered]) -> None:
         missing = [n for n in ("electrode", "area_cm2", "electrolyte") if n not in cell.stated]
         for name in missing:
+            if name in cell.faulty:
+                continue  # reported where it was read
             if name == "electrolyte" and cell.first.values.get(name) is not None:
                 continue  # stated but unreadable: reported where it was read
             self._fault(

@@ -39,7 +39,8 @@ class FlatRow:
 
     values holds only what is filled; `temperature_K` [K] stands for temperature_C, fitted
     quantities are `Value`s in canonical units as fitted. per_area: quantities that are still
-    per geometric area. written: the row's text, or its cells.
+    per geometric area. written: the row's text, or its cells. faulty: the columns a fault was
+    reported for.
     """
 
     file: str
@@ -48,6 +49,7 @@ class FlatRow:
     written: str | Sequence[Any] = ()
     per_area: tuple[str, ...] = ()
     form: Form = field(default_factory=Form)
+    faulty: frozenset[str] = frozenset()
 
     def raw(self, name: str) -> str | None:
         """Return the cell of a column as it was written, or None."""
@@ -104,12 +106,15 @@ class RowReader:
         found: dict[str, list[Any]] = {}
         for place, header, column in self._columns:
             cells = [row[2][place] for row in block]
-            found[header.name] = column.convert(cells, reading.reporter(header, self))
+            found[header.name] = column.convert(cells, reading.reporter(header))
         for name, value in self._fixed.items():
             found[name] = [value] * len(block)
         self._join_errors(found, reading)
         self._whole_rows(found, reading)
-        return self._rows(found, block), reading.in_order()
+        rows = self._rows(found, block)
+        for place, name in reading.faulty:
+            rows[place].faulty |= {name}
+        return rows, reading.in_order()
 
     def _join_errors(self, found: dict[str, list[Any]], reading: _Reading) -> None:
         """Make each quantity's column, and that of its standard error, one of values."""
@@ -212,33 +217,43 @@ class _Reading:
         self.block = block
         self.count = len(block)
         self.faulty: set[tuple[int, str]] = set()
-        self._faults: list[tuple[int, Fault]] = []
+        self._faults: list[tuple[int, int, Fault, bool]] = []
 
-    def reporter(self, header: Header, reader: RowReader) -> Any:
+    def reporter(self, header: Header) -> Any:
         """Return what a column calls for a cell it cannot read."""
 
         def report(place: int, cell: Any, fault: ValueFault | None) -> None:
             self.faulty.add((place, header.name))
-            if isinstance(fault, WrongMark):
-                reader.wrong_marks += 1
-                if reader.wrong_marks > 1:
-                    return  # the first one says it for the file
             if fault is not None:
-                self.add(place, header.name, header.written, str(fault), fault.expected)
+                self.add(
+                    place, header.name, header.written, str(fault), fault.expected,
+                    wrong_mark=isinstance(fault, WrongMark),
+                )  # fmt: skip
 
         return report
 
-    def add(self, place: int, name: str, column: str, message: str, expected: str) -> None:
+    def add(
+        self,
+        place: int,
+        name: str,
+        column: str,
+        message: str,
+        expected: str,
+        *,
+        wrong_mark: bool = False,
+    ) -> None:
         """Note a fault of one row, with what stands in the column's cell."""
         self.faulty.add((place, name))
         line, _, cells = self.block[place]
         at = self.places.get(name)
         value = None if at is None or cells[at] in (None, "") else shown(cells[at], 200)
-        self._faults.append((place, Fault(message, self.file, line, column, value, expected)))
+        fault = Fault(message, self.file, line, column, value, expected)
+        self._faults.append((place, len(cells) if at is None else at, fault, wrong_mark))
 
-    def in_order(self) -> list[Fault]:
-        """Return the faults by line, within a line by column."""
-        return [fault for _, fault in sorted(self._faults, key=lambda item: item[0])]
+    def in_order(self) -> list[tuple[Fault, bool]]:
+        """Return the faults by line, within a line by column, and which are wrong marks."""
+        self._faults.sort(key=lambda item: item[:2])
+        return [(fault, wrong_mark) for _, _, fault, wrong_mark in self._faults]
 
 
 def _as_value(value: Any) -> Value | None:
