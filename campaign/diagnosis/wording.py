@@ -49,7 +49,8 @@ def contrast_interval(
 
     contrasts: tuple[Contrast, ...] = getattr(finding, "contrasts", ())
     levels = int(getattr(finding, "n_levels", 0))
-    return simultaneous_interval(contrast.estimate, family, levels, len(contrasts), alpha)
+    related = getattr(finding, "correlation", None)
+    return simultaneous_interval(contrast.estimate, family, levels, len(contrasts), alpha, related)
 
 
 def largest(finding: Decider | None) -> Contrast | None:

@@ -20,6 +20,7 @@ from campaign.statistics.estimate import Estimate
 Decision = Literal["responds", "responds, inverse", "unresponsive", "open"]
 Family = Literal["single", "tukey", "dunnett", "bonferroni"]
 Interval = tuple[float, float]
+Correlation = Sequence[Sequence[float]]
 
 
 class Difference(Protocol):
@@ -57,6 +58,10 @@ class Evidence(Protocol):
     def n_levels(self) -> int:
         """Number of levels they come from."""
 
+    @property
+    def correlation(self) -> Correlation | None:
+        """Correlation of the differences from a control, where it is known."""
+
 
 def beyond(interval: Interval | None, margin: float) -> int:
     """Return +1 for an interval wholly above +margin, -1 wholly below -margin, else 0."""
@@ -73,14 +78,33 @@ def inside(interval: Interval | None, margin: float) -> bool:
 
 
 def simultaneous_interval(
-    estimate: Estimate, family: Family, n_levels: int, n_comparisons: int, alpha: float
+    estimate: Estimate,
+    family: Family,
+    n_levels: int,
+    n_comparisons: int,
+    alpha: float,
+    correlation: Correlation | None = None,
 ) -> Interval | None:
-    """Return the two-sided 1 - alpha interval that holds for all differences together."""
+    """Return the two-sided 1 - alpha interval that holds for all differences together.
+
+    correlation: of the differences from a control; where it is not known none is assumed,
+    which is on the safe side (Sidak, J. Am. Stat. Assoc. 62 (1967) 626).
+    """
+    import numpy as np
+
     from campaign.statistics.comparisons import critical
 
     if not (math.isfinite(estimate.se) and estimate.df > 0):
         return None
-    factor = critical(family, alpha, estimate.df, n_levels, n_comparisons=n_comparisons)
+    known = np.eye(n_comparisons) if correlation is None else np.asarray(correlation, float)
+    factor = critical(
+        family,
+        alpha,
+        estimate.df,
+        n_levels,
+        correlation=known if family == "dunnett" else None,
+        n_comparisons=n_comparisons,
+    )
     return estimate.value - factor * estimate.se, estimate.value + factor * estimate.se
 
 
@@ -111,7 +135,11 @@ def decide(evidence: Evidence, alpha: float = 0.05) -> Decision:
         return "open"
     count = len(differences)
     for each in differences:
-        joint = simultaneous_interval(each, evidence.family, evidence.n_levels, count, alpha)
+        if not beyond(each.interval(1 - alpha), margin):
+            continue  # the simultaneous interval is wider, and slow to find
+        joint = simultaneous_interval(
+            each, evidence.family, evidence.n_levels, count, alpha, evidence.correlation
+        )
         if beyond(joint, margin):
             return "responds"
     if all(inside(each.interval(1 - 2 * alpha), margin) for each in differences):

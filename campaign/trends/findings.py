@@ -38,6 +38,7 @@ class Finding:
     open_because: a reason that leaves the decision open whatever the numbers say.
     confounded: a confounding warning stands against this finding.
     tested: False where the readings hold no contrast on this axis (`open_because` says why).
+    correlation: of the contrasts from one control (family dunnett), where it is known.
     """
 
     axis: Axis
@@ -54,6 +55,7 @@ class Finding:
     confounded: bool = False
     warnings: tuple[str, ...] = field(default=())
     tested: bool = True
+    correlation: tuple[tuple[float, ...], ...] | None = None
 
     def decision(self, alpha: float = 0.05) -> Decision:
         """Return the decision with error probability `alpha` (two-sided intervals 1 - alpha)."""

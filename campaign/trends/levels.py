@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Sequence
 from dataclasses import dataclass
 from itertools import combinations
@@ -83,6 +84,18 @@ def against(fitted: LevelFit, base: int, names: Sequence[str]) -> tuple[Contrast
     """Return the difference of every level linked to `base` from it."""
     group = next(group for group in fitted.groups if base in group)
     return tuple(fitted.difference(one, base, names) for one in group if one != base)
+
+
+def correlation(
+    fitted: LevelFit, contrasts: Sequence[Contrast], names: Sequence[str]
+) -> tuple[tuple[float, ...], ...] | None:
+    """Return the correlation of contrasts, None where a contrast has no standard error."""
+    if not all(math.isfinite(one.estimate.se) and one.estimate.se > 0 for one in contrasts):
+        return None
+    rows = [fitted.row(names.index(one.a), names.index(one.b)) for one in contrasts]
+    cov = fitted.fit.mixed.contrasts(rows)[1]
+    scale = np.sqrt(cov.diagonal())
+    return tuple(tuple(float(x) for x in row) for row in cov / scale[:, None] / scale)
 
 
 def group_levels(values: FloatArray, tolerance: float) -> tuple[IntArray, FloatArray]:

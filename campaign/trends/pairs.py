@@ -154,6 +154,7 @@ def _held(s: Sample, how: Comparison) -> IntArray:
 def _judge(s: Sample, p: _Parts, criteria: Criteria, how: Comparison) -> PairsFit:
     fitted = levels.fit_levels(s, p.level, p.stratum, by_cell=p.cells)
     contrasts, family, count = _contrasts(fitted, p.names, how)
+    related = levels.correlation(fitted, contrasts, p.names) if family == "dunnett" else None
     warnings = list(s.warnings)
     if s.n_specimens == 1:
         warnings.append("one specimen: no interval between specimens")
@@ -169,7 +170,7 @@ def _judge(s: Sample, p: _Parts, criteria: Criteria, how: Comparison) -> PairsFi
         contrast_margin=how.margin(criteria), family=family, n_levels=count,
         open_because=s.open_because or (None if how.logarithm else s.pore_open)
         or (f"strata differ, {apart.text}" if apart else None),
-        confounded=bool(confounders), warnings=tuple(warnings),
+        confounded=bool(confounders), warnings=tuple(warnings), correlation=related,
     )  # fmt: skip
     adjusted = _adjusted(s, p, contrasts, confounders[0], how) if confounders else {}
     return PairsFit(s, fitted, finding, adjusted)
@@ -251,7 +252,9 @@ def _adjusted(
 def simultaneous(e: Estimate, finding: Finding, alpha: float) -> tuple[float, float] | None:
     """Return the simultaneous interval of one of a finding's contrasts, in its unit."""
     count = len(finding.contrasts)
-    return simultaneous_interval(e, finding.family, finding.n_levels, count, alpha)
+    return simultaneous_interval(
+        e, finding.family, finding.n_levels, count, alpha, finding.correlation
+    )
 
 
 def _records(fitted: PairsFit, criteria: Criteria, how: Comparison) -> list[RatioEstimate]:
