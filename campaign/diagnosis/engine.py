@@ -140,12 +140,15 @@ def _hold(prediction: Prediction, evidence: Evidence, alpha: float, strict: floa
         confirmed,
         against,
         bool(testable),
-        prediction.required and beaten and _falls(prediction, evidence, alpha, strict),
+        prediction.required and beaten and falls(prediction, evidence, alpha, strict),
     )
 
 
-def _falls(prediction: Prediction, evidence: Evidence, alpha: float, strict: float) -> bool:
-    """Return whether a requirement is decisively contradicted in all its testable parts."""
+def falls(prediction: Prediction, evidence: Evidence, alpha: float, strict: float) -> bool:
+    """Return whether a requirement is decisively contradicted in all its testable parts.
+
+    At alpha and at the `strict` level that eliminates: alpha over the number of requirements.
+    """
     tested = False
     for axis in prediction.axes:
         finding = evidence.get(axis)
@@ -165,7 +168,7 @@ def stands(
     if step.needs_arc and step.needs_arc in absent:
         return False
     strict = alpha / max(1, len(step.required))
-    return not any(_falls(one, evidence, alpha, strict) for one in step.required)
+    return not any(falls(one, evidence, alpha, strict) for one in step.required)
 
 
 def told_apart(step: Step, steps: Sequence[Step], evidence: Evidence, alpha: float) -> bool:

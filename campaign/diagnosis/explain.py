@@ -7,9 +7,9 @@ from dataclasses import dataclass
 from typing import Any, Final
 
 from campaign.diagnosis.budget import RESPONSE_OF, TERMS, Budget, budgets
-from campaign.diagnosis.engine import Assessment
+from campaign.diagnosis.engine import Assessment, falls
 from campaign.diagnosis.lazy import trend_evidence
-from campaign.diagnosis.robustness import Robustness, robustness
+from campaign.diagnosis.robustness import Influence, Robustness, robustness
 from campaign.diagnosis.signatures import AXES, Prediction
 from campaign.diagnosis.summary import (
     Diagnosis,
@@ -30,7 +30,8 @@ from campaign.ledger.readings import Snapshot
 from campaign.trends.results import plain
 
 TIMES_s: Final = (0.1, 1.0, 10.0, 100.0)
-SHOWN_INFLUENCES: Final = 8
+SHOWN_INFLUENCES: Final = 3
+"""Specimens shown for each axis."""
 
 
 @dataclass(frozen=True)
@@ -85,7 +86,10 @@ def explain(
         by_time=budgets(part.readings, criteria, facts, times_s, scope),
         terms=judged,
         robustness=robustness(part, criteria, electrode, source, scope) if robust else None,
-        would_change=would_change(diagnosis),
+        would_change=would_change(
+            diagnosis,
+            {term: judge(one, criteria.error_probability).word for term, one in judged.items()},
+        ),
     )
 
 
@@ -99,23 +103,46 @@ def _fitted_terms(snapshot: Snapshot, terms: Sequence[str]) -> list[str]:
     ]
 
 
-def would_change(diagnosis: Diagnosis) -> tuple[str, ...]:
-    """Return which decisions would make a step fall or stand again, in sentences."""
+def would_change(diagnosis: Diagnosis, answers: Mapping[str, str] | None = None) -> tuple[str, ...]:
+    """Return which decisions would make a step fall or stand again, in sentences.
+
+    answers: the verdict of each term alone.
+    """
     alpha = diagnosis.criteria.error_probability
     said = []
     for one in diagnosis.candidates:
         if one.status == "eliminated":
-            said.append(_would_return(one))
+            said.append(_would_return(one, diagnosis, alpha))
         else:
             said += [_would_fall(one, p, diagnosis, alpha) for p in one.step.required]
     if diagnosis.budget is not None and diagnosis.budget.next_term is not None:
         other = diagnosis.budget.next_term
-        said.append(f"the answer would be that of {other} if {other} were shown to be the largest")
+        answer = (answers or {}).get(other)
+        said.append(
+            f"the answer would be that of {other}{f' ({answer})' if answer else ''} if {other} "
+            "were shown to be the largest term"
+        )
     return tuple(said)
 
 
-def _would_return(one: Assessment) -> str:
-    return f"{one.step.name} would stand again if this were withdrawn: {'; '.join(one.opposing)}"
+def _would_return(one: Assessment, diagnosis: Diagnosis, alpha: float) -> str:
+    strict = alpha / max(1, len(one.step.required))
+    shown = [
+        f"{axis} were no longer shown to "
+        + ("be unresponsive" if prediction.outcome == "responds" and _flat(decision) else "respond")
+        for prediction in one.step.required
+        if falls(prediction, diagnosis.evidence, alpha, strict)
+        for axis in prediction.axes
+        if is_testable(diagnosis.evidence.get(axis))
+        for decision in (diagnosis.evidence[axis].decision(alpha),)
+    ]
+    if not shown:
+        return f"{one.step.name} would stand again if the {one.step.needs_arc} arc were found"
+    return f"{one.step.name} would stand again if {listed(shown)}"
+
+
+def _flat(decision: str) -> bool:
+    return decision == "unresponsive"
 
 
 def _would_fall(one: Assessment, prediction: Prediction, diagnosis: Diagnosis, alpha: float) -> str:
@@ -123,12 +150,21 @@ def _would_fall(one: Assessment, prediction: Prediction, diagnosis: Diagnosis, a
     axes = listed(list(prediction.axes))
     verb = "were both shown" if len(prediction.axes) > 1 else "were shown"
     found = [
-        f"{axis} is now {diagnosis.evidence[axis].decision(alpha)}"
+        f"{axis}: {diagnosis.evidence[axis].decision(alpha)}"
         if is_testable(diagnosis.evidence.get(axis))
-        else f"{axis} is not tested"
+        else f"{axis}: not tested"
         for axis in prediction.axes
     ]
-    return f"{one.step.name} would fall if {axes} {verb} {contrary} ({listed(found)})"
+    return f"{one.step.name} would fall if {axes} {verb} {contrary} (now {', '.join(found)})"
+
+
+def _carrying(influences: Sequence[Influence]) -> list[dict[str, Any]]:
+    """Return the specimens that move each axis most, in the order of the axes."""
+    return [
+        one.__dict__
+        for axis in AXES
+        for one in [found for found in influences if found.axis == axis][:SHOWN_INFLUENCES]
+    ]
 
 
 def to_dict(explanation: Explanation) -> dict[str, Any]:
@@ -154,7 +190,7 @@ def to_dict(explanation: Explanation) -> dict[str, Any]:
             "verdict": tried.verdict,
             "tried": [one.__dict__ for one in tried.changes],
             "changing": [one.__dict__ for one in tried.changing],
-            "influences": [one.__dict__ for one in tried.influences[:SHOWN_INFLUENCES]],
+            "influences": _carrying(tried.influences),
         }
     )
     converted: dict[str, Any] = plain(row)

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator
+from collections.abc import Iterator, Sequence
 from dataclasses import asdict, replace
 from datetime import UTC, datetime
 from typing import TYPE_CHECKING, Any
@@ -18,32 +18,67 @@ from campaign.trends.reading import FilterSource, read_campaign
 if TYPE_CHECKING:
     from sqlalchemy import Connection
 
+    from campaign.diagnosis.summary import Diagnosis
     from campaign.diagnosis.timeline import Moment
+    from campaign.ledger.criteria import Criteria
     from campaign.ledger.periods import Every
+    from campaign.ledger.readings import Snapshot
 
 
-def summarise(db: str | None, wanted: FilterSource | None = None) -> dict[str, Any]:
-    """Return the rate-limiting-step table as plain data: criteria and a row an electrode."""
+def summarise(
+    db: str | None,
+    wanted: FilterSource | None = None,
+    *,
+    by: str | None = None,
+    times_s: Sequence[float] = (),
+) -> dict[str, Any]:
+    """Return the rate-limiting-step table as plain data: criteria and a row an electrode.
+
+    by: salt, solvents or temperature gives a row each. times_s [s]: the budget at these
+    times as well, in `budget_by_time`. Raises Refused for an unknown grouping.
+    """
     from campaign.diagnosis.headline import with_headline
     from campaign.diagnosis.summary import diagnose, to_row
 
     taken, criteria = read_campaign(db, wanted)
-    rows = [
-        with_headline(to_row(found), taken, criteria, found) for found in diagnose(taken, criteria)
-    ]
+    rows = []
+    for found in diagnose(taken, criteria, by=by):
+        row = with_headline(to_row(found), taken, criteria, found)
+        if times_s:
+            row["budget_by_time"] = _over_time(taken, criteria, found, times_s)
+        rows.append(row)
     return {"criteria": asdict(criteria), "rows": rows, "left_out": dict(taken.left_out)}
 
 
-def explained(electrode: str, db: str | None, wanted: FilterSource | None = None) -> dict[str, Any]:
+def _over_time(
+    taken: Snapshot, criteria: Criteria, found: Diagnosis, times_s: Sequence[float]
+) -> list[dict[str, Any]]:
+    from campaign.diagnosis.budget import budgets
+    from campaign.diagnosis.summary import budget_row, part_of
+    from campaign.trends.results import plain
+
+    part = part_of(taken, criteria, found)
+    facts = part.electrodes.get(found.electrode)
+    return [plain(budget_row(one)) for one in budgets(part.readings, criteria, facts, times_s)]
+
+
+def explained(
+    electrode: str,
+    db: str | None,
+    wanted: FilterSource | None = None,
+    *,
+    times_s: Sequence[float] = (),
+) -> dict[str, Any]:
     """Return everything behind one electrode's verdict as plain data.
 
-    Raises Refused for an electrode without readings.
+    times_s [s]: when the budget is told, four times around the default working time where
+    none is given. Raises Refused for an electrode without readings.
     """
-    from campaign.diagnosis.explain import explain, to_dict
+    from campaign.diagnosis.explain import TIMES_s, explain, to_dict
     from campaign.diagnosis.headline import with_headline
 
     taken, criteria = read_campaign(db, wanted)
-    found = explain(taken, criteria, electrode)
+    found = explain(taken, criteria, electrode, times_s=times_s or TIMES_s)
     row = with_headline(to_dict(found), taken, criteria, found.diagnosis)
     return {**row, "criteria": asdict(criteria)}
 

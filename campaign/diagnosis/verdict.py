@@ -207,14 +207,26 @@ def agree(verdicts: Mapping[str, Verdict]) -> Verdict:
             because=(f"{terms} are not told apart in size, but all lead to it", *first.because),
         )
     named = listed([f"{term}: {one.text}" for term, one in verdicts.items()])
+    differ = f"they differ ({named})" if len(words) > 1 else f"each alone is {first.text}"
     return Verdict(
         "undetermined",
         None,
-        because=(f"which of {terms} is the largest is not settled, and they differ ({named})",),
+        because=(f"which of {terms} is the largest is not settled, and {differ}",),
         missing=(
             f"more cells at the reference condition, to settle which of {terms} is the largest",
-            *_unique(text for one in verdicts.values() for text in one.missing),
+            *_missing_of_terms(verdicts),
         ),
+    )
+
+
+def _missing_of_terms(verdicts: Mapping[str, Verdict]) -> tuple[str, ...]:
+    """Return what is missing, each once; with its term where not all terms miss it."""
+    terms: dict[str, list[str]] = {}
+    for term, one in verdicts.items():
+        for text in one.missing:
+            terms.setdefault(text, []).append(term)
+    return tuple(
+        text if len(of) == len(verdicts) else f"{listed(of)}: {text}" for text, of in terms.items()
     )
 
 

@@ -31,6 +31,11 @@ def criteria_sentence(criteria: Mapping[str, Any]) -> str:
     return f"Criteria: {'; '.join(parts)}. Ea: form ln R."
 
 
+def interval_level(criteria: Mapping[str, Any]) -> str:
+    """Return the level of the intervals shown, such as '95 %'."""
+    return f"{100 * (1 - criteria['error_probability']):.4g} %"
+
+
 def show_criteria(
     rows: Sequence[Row],
     past: Sequence[Row],

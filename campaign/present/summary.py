@@ -5,25 +5,32 @@ from __future__ import annotations
 from collections.abc import Mapping, Sequence
 from typing import Any
 
+from campaign.present.budgets import condition_text, flat_shares, show_budgets
+from campaign.present.criteria import criteria_sentence, interval_level
 from campaign.present.numbers import share, significant, with_interval
+from campaign.present.paragraphs import say
 from campaign.present.refusals import note
 from campaign.present.tables import Column, show_csv, show_json, show_table
 
 Row = Mapping[str, Any]
 
 AXES = ("concentration", "solvent", "additive", "potential", "barrier", "age")
+GROUPS = ("salt", "solvents", "temperature")
 
-COLUMNS = (
-    Column("electrode", "electrode"),
-    Column("slowest", "dominant"),
-    Column("order", "order (95 %)"),
-    Column("solvent", "solvents"),
-    Column("Ea", "Ea/(kJ/mol)"),
-    Column("law", "law in E"),
-    Column("verdict", "verdict"),
-    Column("strength", "strength"),
-    Column("open", "missing"),
-)
+
+def _columns(level: str) -> tuple[Column, ...]:
+    return (
+        Column("electrode", "electrode"),
+        *(Column(group, group) for group in GROUPS),
+        Column("slowest", "dominant"),
+        Column("order", f"order ({level})"),
+        Column("solvent", "solvents"),
+        Column("Ea", "Ea/(kJ/mol)"),
+        Column("law", "law in E"),
+        Column("verdict", "verdict"),
+        Column("strength", "strength"),
+        Column("open", "missing"),
+    )
 
 
 def show_summary(
@@ -31,6 +38,8 @@ def show_summary(
     *,
     as_json: bool,
     as_csv: bool = False,
+    as_markdown: bool = False,
+    as_latex: bool = False,
     stated: Mapping[str, Any] | None = None,
 ) -> None:
     """Print the table in the form asked for, what is missing, and the criteria used."""
@@ -45,17 +54,31 @@ def show_summary(
         asked = ", ".join(f"--{k.replace('_', '-')} {v}" for k, v in (stated or {}).items())
         note(f"No measurements match {asked}." if asked else "There are no measurements yet.")
         return
-    show_table([_shown(row) for row in rows], COLUMNS)
+    if as_markdown or as_latex:
+        from campaign.present import papers
+
+        print((papers.latex if as_latex else papers.markdown)(found))
+        return
+    show_table([_shown(row) for row in rows], _columns(interval_level(found["criteria"])))
+    for row in rows:
+        if row.get("budget_by_time"):
+            print()
+            budgets = row["budget_by_time"]
+            show_budgets(budgets, f"{name(row)}: shares at {condition_text(budgets[0])}")
     _sentences(rows)
-    print(_criteria_line(found["criteria"]))
+    print()
+    say(criteria_sentence(found["criteria"]))
+
+
+def name(row: Row) -> str:
+    """Return the electrode of a row with its group, where rows were split."""
+    return ", ".join(str(row[key]) for key in ("electrode", *GROUPS) if key in row)
 
 
 def _shown(row: Row) -> dict[str, Any]:
     diagnostics = row["diagnostics"]
     return {
-        "electrode": " ".join(
-            str(row[key]) for key in ("electrode", "salt", "solvents", "temperature") if key in row
-        ),
+        **{key: row[key] for key in ("electrode", *GROUPS) if key in row},
         "slowest": _slowest(row),
         "order": _order(diagnostics["concentration"]),
         "solvent": _factor(diagnostics["solvent"]),
@@ -97,10 +120,15 @@ def barriers(diagnostic: Row) -> str:
 
 
 def _short(missing: Sequence[str]) -> str:
-    named = [axis for axis in AXES if any(text.startswith(axis) for text in missing)]
+    named = [axis for axis in AXES if any(_about(axis, text) for text in missing)]
     if missing and not named:
         return "see below"
     return ", ".join(named)
+
+
+def _about(axis: str, text: str) -> bool:
+    """Return whether a wish is about an axis, alone or after the terms it is for."""
+    return text.startswith(axis) or f": {axis} " in text
 
 
 def _sentences(rows: Sequence[Row]) -> None:
@@ -109,18 +137,9 @@ def _sentences(rows: Sequence[Row]) -> None:
         lines += [f"missing: {text}" for text in row["missing"]]
         lines += [f"note: {text}" for text in row["warnings"]]
         if lines:
-            print(f"\n{row['electrode']}: {row['text']}")
+            print(f"\n{name(row)}: {row['text']}")
             for line in lines:
-                print(f"  {line}")
-
-
-def _criteria_line(criteria: Mapping[str, Any]) -> str:
-    return (
-        f"\nCriteria: order margin {criteria['order_margin']:g}; factor margin "
-        f"{criteria['ratio_margin']:g}; barrier margin {criteria['barrier_margin_kJ_mol']:g} "
-        f"kJ/mol; error probability {criteria['error_probability']:g}; working time "
-        f"{criteria['working_time_s']:g} s. Ea: form ln R."
-    )
+                say(line, "  ", "      ")
 
 
 def _for_csv(row: Row) -> dict[str, Any]:
@@ -128,7 +147,7 @@ def _for_csv(row: Row) -> dict[str, Any]:
     order = diagnostics["concentration"].get("order_ci") or (None, None)
     flat = {
         "electrode": row["electrode"],
-        **{key: row[key] for key in ("salt", "solvents", "temperature") if key in row},
+        **{key: row[key] for key in GROUPS if key in row},
         "n_specimens": row["n_specimens"],
         "n_measurements": row["n_measurements"],
         "dominant": row["dominant"],
@@ -147,4 +166,4 @@ def _for_csv(row: Row) -> dict[str, Any]:
         "missing": "; ".join(row["missing"]),
         "warnings": "; ".join(row["warnings"]),
     }
-    return flat
+    return flat | flat_shares(row.get("budget_by_time", ()))

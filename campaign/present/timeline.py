@@ -5,25 +5,27 @@ from __future__ import annotations
 from collections.abc import Mapping, Sequence
 from typing import Any
 
-from campaign.present.criteria import criteria_sentence
+from campaign.present.criteria import criteria_sentence, interval_level
 from campaign.present.numbers import share, significant, with_interval
+from campaign.present.paragraphs import say
 from campaign.present.refusals import note
 from campaign.present.tables import Column, show_csv, show_json, show_table
 
 Row = Mapping[str, Any]
 
-COLUMNS = (
-    Column("period", "end of"),
-    Column("n", "readings", right=True),
-    Column("specimens", "specimens", right=True),
-    Column("slowest", "dominant"),
-    Column("order", "order (95 %)"),
-    Column("solvent", "solvents"),
-    Column("Ea", "Ea/(kJ/mol)"),
-    Column("verdict", "verdict"),
-    Column("strength", "strength"),
-    Column("mark", ""),
-)
+def _columns(level: str) -> tuple[Column, ...]:
+    return (
+        Column("period", "end of"),
+        Column("n", "readings", right=True),
+        Column("specimens", "specimens", right=True),
+        Column("slowest", "dominant"),
+        Column("order", f"order ({level})"),
+        Column("solvent", "solvents"),
+        Column("Ea", "Ea/(kJ/mol)"),
+        Column("verdict", "verdict"),
+        Column("strength", "strength"),
+        Column("mark", ""),
+    )
 
 
 def show_timeline(
@@ -41,18 +43,19 @@ def show_timeline(
         asked = ", ".join(f"--{k.replace('_', '-')} {v}" for k, v in stated.items())
         note(f"No measurements match {asked}." if asked else "There are no measurements yet.")
         return
+    columns = _columns(interval_level(found["criteria"]))
     for conclusion in found["conclusions"]:
         label = conclusion["electrode"]
         own = [_shown(row) for row in rows if row["electrode"] == label]
-        show_table(own, COLUMNS, f"{label}: {conclusion_text(conclusion)}")
+        show_table(own, columns, f"{label}: {conclusion_text(conclusion)}")
         print()
     what = (
         "readings by the time they were entered, with the criteria of then"
         if found["clock"] == "logged"
         else "readings by the time they were measured, with the fits and criteria of now"
     )
-    print(f"Clock {found['clock']} ({found['clock_because']}): {what}.")
-    print(criteria_sentence(found["criteria"]))
+    say(f"Clock {found['clock']} ({found['clock_because']}): {what}.")
+    say(criteria_sentence(found["criteria"]))
 
 
 def conclusion_text(one: Row) -> str:
