@@ -3,10 +3,11 @@
 from __future__ import annotations
 
 from enum import Enum
-from typing import Annotated
+from typing import Annotated, Any
 
 import typer
 
+from campaign.cli.figures import FigureFile, FigureWidth, Width
 from campaign.cli.options import Asked, query
 
 
@@ -67,6 +68,9 @@ def trend(
     together: Annotated[
         bool, typer.Option("--together", help="Potential: all electrolytes as one series.")
     ] = False,
+    plot: Annotated[bool, typer.Option("--plot", help="A small plot in text below.")] = False,
+    figure: FigureFile = None,
+    width: FigureWidth = Width.two,
 ) -> None:
     """Rebuild a trend: how a resistance depends on one axis, all else held.
 
@@ -75,21 +79,30 @@ def trend(
     from campaign.present.trends import show_trend
     from campaign.trends.reading import rebuilt
 
-    result = rebuilt(
-        axis.value,
-        asked.db,
-        asked.filter,
-        response=response.value,
-        porous=not apparent,
-        scale=scale,
-        without=without or (),
-        more={
+    path = None
+    if figure is not None:
+        from campaign.present.figures.endings import figure_path
+
+        path = figure_path(figure)
+    how: dict[str, Any] = {
+        "response": response.value,
+        "porous": not apparent,
+        "scale": scale,
+        "without": without or (),
+        "more": {
             "activity": activity,
             "age_adjusted": age_adjusted,
             "donor": donor,
             "together": together,
         },
-    )
+    }
+    result = rebuilt(axis.value, asked.db, asked.filter, **how)
     show_trend(
         result, as_json=asked.json, as_csv=asked.csv, rows=rows, stated=asked.stated()
     )
+    if path is not None or (plot and not (asked.json or asked.csv)):
+        from campaign.present.drawing import show_drawings
+        from campaign.trends.curves import read_curves
+
+        curves = read_curves(axis.value, asked.db, asked.filter, **how)
+        show_drawings(result, curves, path, width.value, in_text=plot and not asked.json)

@@ -1,0 +1,63 @@
+"""Writing a figure: the same drawing gives the same bytes."""
+
+from __future__ import annotations
+
+import io
+import re
+from pathlib import Path
+
+from matplotlib.figure import Figure
+
+from campaign.errors import refused
+from campaign.present.figures.style import styled
+
+PNG_DPI = 300
+
+_METADATA: dict[str, dict[str, str | None]] = {
+    "svg": {"Date": None, "Creator": None},
+    "pdf": {"CreationDate": None, "ModDate": None, "Producer": None, "Creator": None},
+    "png": {"Software": None},
+}
+
+
+def content(figure: Figure, kind: str) -> bytes:
+    """Return a figure as the bytes of an svg, pdf or png file."""
+    stream = io.BytesIO()
+    with styled():
+        figure.savefig(stream, format=kind, dpi=PNG_DPI, metadata=_METADATA[kind])
+    return stream.getvalue()
+
+
+def save(figure: Figure, path: Path) -> None:
+    """Write a figure in the form its ending names; Refused where that fails."""
+    try:
+        path.write_bytes(content(figure, path.suffix.lower().lstrip(".")))
+    except OSError as error:
+        raise refused(
+            f"the figure cannot be written to {path}: {error.strerror or error}",
+            column="figure",
+            value=path,
+            expected="a file that can be written",
+        ) from None
+
+
+def inline_svg(figure: Figure, name: str, title: str) -> str:
+    """Return a figure as an SVG element for a page; `name` keeps its ids from other figures'.
+
+    title: said by screen readers. Its text stays text.
+    """
+    from html import escape
+
+    text = content(figure, "svg").decode("utf-8")
+    text = text[text.index("<svg") :]
+    text = re.sub(r'\bid="', f'id="{name}-', text)
+    text = re.sub(r'(xlink:href|href)="#', rf'\1="#{name}-', text)
+    text = re.sub(r"url\(#", f"url(#{name}-", text)
+    text = re.sub(r"<metadata>.*?</metadata>", "", text, flags=re.DOTALL)
+    width, height = re.search(r'width="([\d.]+)pt" height="([\d.]+)pt"', text).groups()  # type: ignore[union-attr]
+    text = re.sub(r'width="[\d.]+pt" height="[\d.]+pt" ', "", text, count=1)
+    opening = (
+        f'<svg role="img" aria-label="{escape(title)}" '
+        f'style="width:{float(width) / 72:.3f}in;aspect-ratio:{width}/{height}"'
+    )
+    return text.replace("<svg", opening, 1).strip()
