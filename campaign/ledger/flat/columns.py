@@ -23,6 +23,7 @@ from campaign.ledger.flat.values import (
     in_bounds,
     instant_reader,
     is_absent,
+    looks_numeric,
     with_uncertainty,
 )
 from campaign.ledger.quantities import WITH_ERROR
@@ -163,7 +164,7 @@ class NumberColumn:
         if isinstance(cell, Uncalculated):
             raise _uncalculated(name, cell)
         text = str(cell)
-        if self.decimal is None and ("." in text or "," in text):
+        if self.decimal is None and ("." in text or "," in text) and looks_numeric(text):
             raise OtherMark
         try:
             number, error = with_uncertainty(as_point(text, self.decimal or "."))

@@ -11,13 +11,12 @@ from dataclasses import dataclass, field
 
 from campaign.errors import Fault
 from campaign.ledger.flat.headers import Header
-from campaign.ledger.flat.values import BOUNDS
+from campaign.ledger.flat.values import BOUNDS, looks_numeric
 
 _THOUSANDS = {
     mark: re.compile(rf"[+-]?[1-9]\d{{0,2}}(?:{re.escape(mark)}\d{{3}})+", re.ASCII)
     for mark in ".,"
 }
-_NUMERIC = re.compile(r"[\d\s.,+\-−±()eE/]*\d[\d\s.,+\-−±()eE/]*")
 EXPECTED = "one decimal mark in the whole file"
 
 
@@ -39,7 +38,7 @@ class MarkFinder:
 
     def see(self, line: int, header: Header, text: str) -> None:
         """Take note of one number's text in a column."""
-        if not _NUMERIC.fullmatch(text):
+        if not looks_numeric(text):
             return
         for mark in ".,":
             if mark not in text:

@@ -107,8 +107,10 @@ def _names(stated: Mapping[str, Any]) -> list[Fault]:
     ours = list(columns.values()) if isinstance(columns, dict) else []
     ours += list(constants) if isinstance(constants, dict) else []
     for name in ours:
+        if not isinstance(name, str):
+            continue  # the wrong form of the table is a fault already
         try:
-            read_header(str(name))
+            read_header(name)
         except HeaderError as error:
             name = shown(name, 80)
             faults.append(Fault(str(error), column=name, value=name, expected=error.expected))

@@ -27,7 +27,8 @@ BLOCK = 2000  # rows converted at once
 class FlatTable:
     """A file as rows with typed values, the faults found in it, and what was assumed.
 
-    sha256: of the file's bytes. headers: canonical name -> header as written.
+    sha256: of the file's bytes. headers: canonical name -> header as written. misread: there
+    are faults in the header, so that columns are missing from the rows.
     """
 
     file: str
@@ -36,6 +37,7 @@ class FlatTable:
     faults: list[Fault] = field(default_factory=list)
     warnings: list[str] = field(default_factory=list)
     headers: dict[str, str] = field(default_factory=dict)
+    misread: bool = False
 
 
 def read_table(
@@ -58,6 +60,7 @@ def read_table(
         _read(table, source, mapping, decimal or mapping.decimal, zone)
     except Refused as error:
         table.faults += error.faults
+    table.faults.sort(key=lambda fault: fault.line or 0)
     _settle_areas(table)
     _note_assumptions(table)
     return table
@@ -72,6 +75,7 @@ def _read(
     line, _, written = first
     heading = read_heading(table.file, line, written, mapping, zone)
     table.faults += heading.faults
+    table.misread = bool(heading.faults)
     table.warnings += [f"{table.file}: {warning}" for warning in heading.warnings]
     table.headers = {h.name: h.written for h in heading.headers if h is not None}
     body = _even(table, source, heading, line)
@@ -157,6 +161,7 @@ def _read_body(table: FlatTable, reader: RowReader, rows: Iterable[Row]) -> None
         table.rows += found
         table.faults += faults
         if len(table.faults) > MOST_FAULTS:
+            table.faults.sort(key=lambda fault: fault.line or 0)
             left = sum(1 for _ in rows)
             _cut(table, block[-1][0], left)
             return

@@ -12,7 +12,7 @@ from campaign.errors import Fault
 from campaign.ledger.flat.columns import WrongMark, column_for
 from campaign.ledger.flat.headers import Header, shown
 from campaign.ledger.flat.values import Value, ValueFault
-from campaign.ledger.quantities import QUANTITIES
+from campaign.ledger.quantities import QUANTITIES, WITH_ERROR
 
 # The flat table is in degrees Celsius; what is kept is kelvin.
 STORED_AS = {"temperature_C": "temperature_K"}
@@ -22,6 +22,7 @@ REQUIRED = {
     "temperature_C": "a temperature in degrees Celsius",
 }
 
+ERRORS = tuple(f"{quantity}_se" for quantity in WITH_ERROR)
 Block = Sequence[tuple[int, Any, Sequence[Any]]]  # line, row as written, its cells
 
 
@@ -68,7 +69,8 @@ class RowReader:
     """Reads rows in blocks: columns, decimal mark and zone are settled.
 
     headers: by place, None for columns passed over. fixed: values that every row has, for
-    columns the file does not have. required: columns whose empty cells are faults. decimal:
+    columns the file does not have. required: columns whose empty cells are faults; None for rows
+    without a header that was checked, where a missing column is one as well. decimal:
     the mark, or None where it could not be told (numbers with a mark are then passed over).
     """
 
@@ -81,12 +83,13 @@ class RowReader:
         *,
         delimiter: str = ",",
         fixed: Mapping[str, Any] | None = None,
-        required: Sequence[str] = tuple(REQUIRED),
+        required: Sequence[str] | None = None,
         guarded: bool = True,
     ) -> None:
         self.file = file
         self._fixed = dict(fixed or {})
-        self._required = required
+        self._required = tuple(REQUIRED) if required is None else required
+        self._rows_alone = required is None
         self._headers = {h.name: h for h in headers if h is not None}
         self._columns = [
             (place, header, column_for(header, decimal, zone, guarded=guarded))
@@ -114,7 +117,16 @@ class RowReader:
         rows = self._rows(found, block)
         for place, name in reading.faulty:
             rows[place].faulty |= {name}
-        return rows, reading.in_order()
+        return rows, self._once_wrong(reading.in_order())
+
+    def _once_wrong(self, faults: Sequence[tuple[Fault, bool]]) -> list[Fault]:
+        """Return faults, of the wrong decimal marks only the first in the file."""
+        kept = []
+        for fault, wrong_mark in faults:
+            self.wrong_marks += wrong_mark
+            if not wrong_mark or self.wrong_marks == 1:
+                kept.append(fault)
+        return kept
 
     def _join_errors(self, found: dict[str, list[Any]], reading: _Reading) -> None:
         """Make each quantity's column, and that of its standard error, one of values."""
@@ -173,13 +185,16 @@ class RowReader:
 
     def _some_value(self, found: Mapping[str, list[Any]], reading: _Reading) -> None:
         columns = [found[q] for q in QUANTITIES if q in found]
+        if not columns and not self._rows_alone:
+            return  # said once of the header
         filled = zip(*columns, strict=True) if columns else [()] * reading.count
+        written = self._headers["R_ct"].written if "R_ct" in self._headers else "R_ct"
         for place, values in enumerate(filled):
             if any(value is not None for value in values):
                 continue
-            if not any((place, q) in reading.faulty for q in QUANTITIES):
+            if not any((place, q) in reading.faulty for q in (*QUANTITIES, *ERRORS)):
                 reading.add(
-                    place, "R_ct", "R_ct",
+                    place, "R_ct", written,
                     "no fitted value is filled; every row needs one at least",
                     "a value in one of " + ", ".join(QUANTITIES),
                 )  # fmt: skip

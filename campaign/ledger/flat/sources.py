@@ -119,15 +119,14 @@ class _Text:
         self._number += 1
         if len(line) > LONGEST_LINE:
             raise refused(
-                f"line {self._number} has more than {LONGEST_LINE} characters, which no table "
-                "needs",
+                f"the line has more than {LONGEST_LINE} characters, which no table needs",
                 file=self.name,
                 line=self._number,
                 expected=f"lines of at most {LONGEST_LINE} characters",
             )
         if "\x00" in line:
             raise refused(
-                f"the file holds a NUL character in line {self._number}; it is not a text table",
+                "the file holds a NUL character; it is not a text table",
                 file=self.name,
                 line=self._number,
                 expected="UTF-8 text",
@@ -136,21 +135,22 @@ class _Text:
         return line
 
     def _not_text(self) -> Refused:
+        """Return the refusal of bytes that are no text, with the line of the first of them."""
+        line, found = self._number + 1, None
         try:
             self._bytes.decode(self._encoding)
         except UnicodeDecodeError as error:
             before = self._bytes[: error.start].decode(self._encoding, "replace")
-            line = before.count("\n") + 1
-            found = f"{self._bytes[error.start]:#04x}"
-            return refused(
-                f"the file is not {self._encoding.upper().removesuffix('-SIG')} text: byte {found} "
-                f"in line {line}; save it as UTF-8 (in a spreadsheet: CSV UTF-8)",
-                file=self.name,
-                line=line,
-                value=found,
-                expected="UTF-8 text",
-            )
-        raise AssertionError("text that decodes as a whole decodes in parts")  # pragma: no cover
+            line, found = before.count("\n") + 1, f"{self._bytes[error.start]:#04x}"
+        encoding = self._encoding.upper().removesuffix("-SIG")
+        return refused(
+            f"the file is not {encoding} text: byte {found}; save it as UTF-8 (in a spreadsheet: "
+            "CSV UTF-8)",
+            file=self.name,
+            line=line,
+            value=found,
+            expected="UTF-8 text",
+        )
 
     def find_delimiter(self) -> str:
         """Skip what stands before the header and return the delimiter; the header is held."""
@@ -216,7 +216,7 @@ class _Text:
 
     def _bad_row(self, line: int, error: csv.Error) -> Refused:
         return refused(
-            f"line {line} is not a table row: {error}; check its quotation marks",
+            f"it is not a table row: {error}; check its quotation marks",
             file=self.name,
             line=line,
             expected="cells separated by one delimiter",

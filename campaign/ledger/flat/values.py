@@ -141,18 +141,29 @@ def _finite(number: float) -> float:
 _PLAINER = str.maketrans({"−": "-", "\u00a0": None, "\u202f": None, "\u2009": None})
 
 
+_NUMERIC = re.compile(r"[\d\s.,+\-−±()eE/]*\d[\d\s.,+\-−±()eE/]*")
+
+
+def looks_numeric(text: str) -> bool:
+    """Return whether a text is made of what numbers are made of, in any notation."""
+    return _NUMERIC.fullmatch(text) is not None
+
+
 class OtherMark(ValueError):
     """A number is written with another decimal mark than its file."""
 
 
 def as_point(text: str, decimal: str) -> str:
-    """Return a number's text with a decimal point and an ASCII minus; raises OtherMark."""
+    """Return a number's text with a decimal point and an ASCII minus.
+
+    Raises OtherMark for a number with the other mark, ValueError for what is no number.
+    """
     text = text.strip()
     if not text.isascii():
         text = text.translate(_PLAINER)
     other = "." if decimal == "," else ","
     if other in text:
-        raise OtherMark
+        raise OtherMark if looks_numeric(text) else ValueError
     return text.replace(",", ".")
 
 
