@@ -94,7 +94,7 @@ def _converted(value: float | None, source: str, target: str) -> float | None:
     if source == target or not source:
         return value
     try:
-        return convert(value, source, target).potential_V
+        return convert(value, source, target).value
     except Refused:
         return None
 
@@ -116,6 +116,7 @@ def recipe_of(text: str, extra: Sequence[Species] = ()) -> Recipe | None:
 
 def cautions_of(cells: Iterable[NewCell], extra: Sequence[Species] = ()) -> tuple[str, ...]:
     """Return the cautions of a set of cells, those of heat first, who decides last."""
+    from campaign.chemistry.cautions import METALS
     from campaign.chemistry.species import cautions, find
 
     names: dict[str, None] = {}
@@ -134,14 +135,6 @@ def cautions_of(cells: Iterable[NewCell], extra: Sequence[Species] = ()) -> tupl
             ] = None
         # a reference of an alkali metal means metal in the cell, the counter electrode too
         for condition in cell.conditions:
-            names[condition.reference] = None
-    known = [name for name in names if name and not _is_plain_reference(name)]
-    return (*hot, *cautions(known, extra))
-
-
-def _is_plain_reference(name: str) -> bool:
-    """Return whether a name is a reference electrode that is no alkali metal."""
-    from campaign.chemistry.cautions import METALS
-    from campaign.chemistry.references import is_known_reference
-
-    return is_known_reference(name) and name.split("/")[0] not in METALS
+            if condition.reference.split("/")[0] in METALS:
+                names[condition.reference] = None
+    return (*hot, *cautions(names, extra))

@@ -187,11 +187,9 @@ def outlook(
     weight = math.sqrt(scatter.typical / scatter.of_new(problem.k))
     y = weight * (truth @ new_T.T + np.sqrt(new_variance)[:, None] * noise)
     levels = _combined(problem, problem.levels, weight * added(problem, slots, "levels"), y)
-    slope = (
-        None
-        if problem.slope is None
-        else _combined(problem, problem.slope, weight * new_T, y)
-    )
+    slope = None
+    if problem.slope is not None:
+        slope = _combined(problem, problem.slope, weight * new_T, y)
     responds, flat = decided(problem.rule, slope, levels, problem.n_levels_now)
     shown = slope if slope is not None else levels
     position = 0 if show is None or slope is not None else _position(problem.levels, show, levels)
@@ -219,19 +217,23 @@ def _truths(
 
 @dataclass(frozen=True)
 class Estimates:
-    """Estimates (draws, q) and standard errors (draws, q) of q contrasts, and their df."""
+    """Estimates (draws, q) and standard errors (draws, q) of q contrasts, and their df.
+
+    which: the contrasts of the model they are; correlation (q, q) of them.
+    """
 
     value: FloatArray
     se: FloatArray
     df: float
     which: tuple[int, ...] = ()
+    correlation: FloatArray | None = None
 
 
 def _combined(problem: Problem, model: Linear, rows: FloatArray, y: FloatArray) -> Estimates:
     """Return the contrasts of present and new units together, those that can be estimated."""
     normal = model.normal + rows.T @ rows
     right = model.right[None, :] + y @ rows
-    inverse = np.linalg.pinv(normal, hermitian=True)
+    inverse = np.asarray(np.linalg.pinv(normal, hermitian=True), np.float64)
     beta = right @ inverse
     own = model.beta
     squares = model.sse + float(own @ model.normal @ own) + (y**2).sum(axis=1)
@@ -243,10 +245,11 @@ def _combined(problem: Problem, model: Linear, rows: FloatArray, y: FloatArray) 
     if spare <= 0 or not which:
         nothing = np.full((len(y), len(which)), np.nan)
         return Estimates(nothing, nothing, 0.0, which)
-    variance = np.einsum("qp,pr,qr->q", rows_of, inverse, rows_of)
-    se = np.sqrt((sse / spare)[:, None] * variance[None, :])
-    df = spare / problem.units_per_cell if problem.units_per_cell > 1 else spare
-    return Estimates(beta @ rows_of.T, se, float(df), which)
+    covariance = rows_of @ inverse @ rows_of.T
+    scale = np.sqrt(covariance.diagonal())
+    se = np.sqrt(sse / spare)[:, None] * scale[None, :]
+    df = float(spare / problem.units_per_cell)
+    return Estimates(beta @ rows_of.T, se, df, which, covariance / scale[:, None] / scale)
 
 
 def _estimable(contrasts: FloatArray, normal: FloatArray, inverse: FloatArray) -> tuple[int, ...]:
@@ -274,16 +277,17 @@ def decided(
             return nothing, nothing
         value, se = slope.value[:, 0], slope.se[:, 0]
         margin = rule.slope_margin or 0.0
-        responds = np.abs(value) - _t(slope.df, rule.alpha) * se > margin
+        responds = np.asarray(np.abs(value) - _t(slope.df, rule.alpha) * se > margin, np.bool_)
         level = np.abs(value) + _t(slope.df, 2 * rule.alpha) * se < margin
         return responds, np.asarray(~responds & level & flat)
     if levels.df <= 0 or not count:
         nothing = np.zeros(len(levels.value), np.bool_)
         return nothing, nothing
     k = n_levels or _levels_of(rule.family, count)
-    factor = critical(rule.family, rule.alpha, levels.df, k, n_comparisons=count)
+    related = levels.correlation if rule.family == "dunnett" else None
+    factor = critical(rule.family, rule.alpha, levels.df, k, related, count)
     lower = np.abs(levels.value) - factor * levels.se
-    responds = (lower > rule.contrast_margin).any(axis=1)
+    responds = np.asarray((lower > rule.contrast_margin).any(axis=1), np.bool_)
     return responds, np.asarray(~responds & flat)
 
 
@@ -291,7 +295,7 @@ def _levels_of(family: Family, count: int) -> int:
     """Return the number of levels behind `count` contrasts."""
     if family == "dunnett":
         return count + 1
-    return int(round((1 + math.sqrt(1 + 8 * count)) / 2))
+    return round((1 + math.sqrt(1 + 8 * count)) / 2)
 
 
 def _inside(levels: Estimates, margin: float, alpha: float) -> BoolArray:
@@ -322,11 +326,19 @@ def _half_width(found: Estimates, position: int, alpha: float) -> float:
     return _t(found.df, alpha) * float(np.median(found.se[:, position]))
 
 
-def falls_to(problem: Problem, slots: Sequence[int], target: float, **how: int) -> float | None:
+def falls_to(
+    problem: Problem,
+    slots: Sequence[int],
+    target: float,
+    *,
+    draws: int = DRAWS,
+    seed: int = SEED,
+) -> float | None:
     """Return the factor to which all scatter would have to fall for `slots` to reach `target`.
 
     None where even a hundredth of it would not do: the estimate then lies at a margin.
     """
+
     def reached(factor: float) -> bool:
         # all scatter, that of the present cells too: the same campaign, better reproduced
         smaller = replace(
@@ -336,7 +348,7 @@ def falls_to(problem: Problem, slots: Sequence[int], target: float, **how: int) 
             levels=_quieter(problem.levels, factor),
             slope=None if problem.slope is None else _quieter(problem.slope, factor),
         )
-        return outlook(smaller, slots, **how).chance >= target
+        return outlook(smaller, slots, draws=draws, seed=seed).chance >= target
 
     if not reached(0.01):
         return None

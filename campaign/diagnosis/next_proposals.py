@@ -1,0 +1,442 @@
+"""What to build and measure next: the least bench work for every open diagnostic that matters."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Mapping, Sequence
+from dataclasses import dataclass, field, replace
+from typing import Any
+
+import numpy as np
+
+from campaign.chemistry.species import Species
+from campaign.diagnosis.budget import RESPONSE_OF
+from campaign.diagnosis.lazy import trend_evidence
+from campaign.diagnosis.next_axes import Scene, Unplannable, layout, scene
+from campaign.diagnosis.next_cells import NewCell, as_dicts, described, hours_of
+from campaign.diagnosis.next_layouts import Layout
+from campaign.diagnosis.next_limits import cautions_of
+from campaign.diagnosis.next_power import DRAWS, SEED, Outlook, falls_to, outlook
+from campaign.diagnosis.next_questions import (
+    ALONE,
+    STRENGTH,
+    Question,
+    questions,
+)
+from campaign.diagnosis.next_sets import MOST_CELLS, sequences, sizes
+from campaign.diagnosis.next_within import age_layout, largest_layout, potential_layout
+from campaign.diagnosis.summary import (
+    Outcome,
+    absent_responses,
+    of_electrode,
+    settle,
+)
+from campaign.diagnosis.wording import exponential
+from campaign.ledger.costs import Costs
+from campaign.ledger.criteria import Criteria
+from campaign.ledger.readings import Snapshot
+from campaign.trends.findings import Finding
+from campaign.trends.results import plain
+from campaign.trends.sample import Sample, draw, source
+
+CHANCE = 0.8
+"""The chance of a decision a proposal is made for."""
+
+AFFORDABLE_h = 120.0
+"""Bench hours a single proposal may take unless a budget says otherwise [h]."""
+
+LARGEST = "largest term"
+"""The axis name under which more cells at the reference condition are proposed."""
+
+
+@dataclass(frozen=True)
+class Plan:
+    """How proposals are to be made.
+
+    chance: of a decision, to be reached at least. affordable_h [h]: of one proposal.
+    """
+
+    costs: Costs = field(default_factory=Costs)
+    chance: float = CHANCE
+    affordable_h: float = AFFORDABLE_h
+    draws: int = DRAWS
+    seed: int = SEED
+    species: tuple[Species, ...] = ()
+
+
+@dataclass(frozen=True)
+class Proposal:
+    """One line of `next`: cells that decide one axis of one response, and what they promise.
+
+    settles: the chance asked for is reached at an affordable cost. changes: ALONE, TOGETHER
+    or STRENGTH. frontier: (hours, chance, cells) of every set considered, cheapest first.
+    """
+
+    electrode: str
+    axis: str
+    response: str
+    cells: tuple[NewCell, ...]
+    hours: float | None
+    interval_now: tuple[float, float] | None
+    interval_expected: tuple[float, float] | None
+    chance: float | None
+    responds: float | None
+    settles: bool
+    changes: int
+    alpha: float
+    why: str
+    cautions: tuple[str, ...] = ()
+    outcomes: Mapping[str, str] = field(default_factory=dict)
+    between: tuple[str, str] | None = None
+    unit: str = ""
+    assumed: tuple[str, ...] = ()
+    frontier: tuple[tuple[float, float, tuple[NewCell, ...]], ...] = ()
+
+    def as_dict(self) -> dict[str, Any]:
+        """Return the proposal with the keys of the fixed interface, and a few more."""
+        row: dict[str, Any] = plain(
+            {
+                "electrode": self.electrode,
+                "axis": self.axis,
+                "response": self.response,
+                "add": as_dicts(self.cells),
+                "specimens": len(self.cells),
+                "hours": self.hours,
+                "interval_now": self.interval_now,
+                "interval_expected": self.interval_expected,
+                "interval_of": self.unit,
+                "between": list(self.between) if self.between else None,
+                "chance": self.chance,
+                "chance_responds": self.responds,
+                "error_probability": self.alpha,
+                "settles": self.settles,
+                "changes": ("verdict", "verdict with other answers", "strength")[self.changes],
+                "outcomes": dict(self.outcomes),
+                "why": self.why,
+                "assumed": list(self.assumed),
+                "cautions": list(self.cautions),
+            }
+        )
+        return row
+
+
+def propose(
+    snapshot: Snapshot,
+    criteria: Criteria,
+    plan: Plan | None = None,
+    *,
+    electrodes: Sequence[str] | None = None,
+    axes: Sequence[str] | None = None,
+) -> list[Proposal]:
+    """Return a proposal for every open diagnostic that can change a verdict, best first.
+
+    Those that settle come first, then those that change the verdict by themselves, then the
+    fewer bench hours. electrodes, axes: only these.
+    """
+    how = plan or Plan()
+    labels = sorted(set(snapshot.readings.electrode.tolist()))
+    found: list[Proposal] = []
+    for label in labels:
+        if electrodes is None or label in electrodes:
+            found += of_one(snapshot, criteria, label, how, axes)
+    return ranked(found)
+
+
+def ranked(proposals: Sequence[Proposal]) -> list[Proposal]:
+    """Return proposals best first."""
+
+    def rank(one: Proposal) -> tuple[float, ...]:
+        hours = math.inf if one.hours is None else one.hours
+        return (not one.settles, one.changes == STRENGTH, hours, -(one.chance or 0.0))
+
+    return sorted(proposals, key=rank)
+
+
+def of_one(
+    snapshot: Snapshot,
+    criteria: Criteria,
+    electrode: str,
+    plan: Plan,
+    axes: Sequence[str] | None = None,
+) -> list[Proposal]:
+    """Return the proposals of one electrode, one a question."""
+    part = of_electrode(snapshot, electrode)
+    outcome = settle(part, criteria, electrode, trend_evidence)
+    alpha = criteria.error_probability
+    absent = absent_responses(part.readings, outcome.budget)
+    coded = source(part, criteria, electrode)
+    found = []
+    peers = [one for one in sorted(set(snapshot.readings.electrode.tolist())) if one != electrode]
+    for judged in outcome.judged.values():
+        asked = [
+            one for one in questions(judged, alpha, absent) if axes is None or one.axis in axes
+        ]
+        if not asked:
+            continue
+        others = [_drawn(snapshot, criteria, peer, judged.response) for peer in peers]
+        whole = draw(part, coded, judged.response)
+        where = scene(snapshot, criteria, electrode, whole, others)
+        for one in asked:
+            finding = judged.evidence[one.axis]
+            assert isinstance(finding, Finding)
+            found.append(_proposal(where, one, finding, plan))
+    if axes is None or LARGEST in axes:
+        found += _largest(snapshot, criteria, electrode, outcome, plan)
+    return found
+
+
+def _drawn(snapshot: Snapshot, criteria: Criteria, electrode: str, response: str) -> Sample:
+    part = of_electrode(snapshot, electrode)
+    return draw(part, source(part, criteria, electrode), response)
+
+
+def _largest(
+    snapshot: Snapshot, criteria: Criteria, electrode: str, outcome: Outcome, plan: Plan
+) -> list[Proposal]:
+    weighed = outcome.budget
+    if weighed is None or not weighed.rivals or outcome.verdict.word != "undetermined":
+        return []
+    response = RESPONSE_OF[weighed.dominant]
+    where = scene(
+        snapshot, criteria, electrode, _drawn(snapshot, criteria, electrode, response)
+    )
+    asked = Question(LARGEST, response, criteria.error_probability, ALONE, {})
+    try:
+        made = largest_layout(where, weighed, criteria.error_probability)
+    except Unplannable as reason:
+        return [_without(where, asked, str(reason))]
+    return [_best(where, asked, [made], plan)]
+
+
+def _proposal(where: Scene, asked: Question, finding: Finding, plan: Plan) -> Proposal:
+    """Return the proposal for one question: existing levels first, then new ones."""
+    try:
+        if asked.axis == "potential":
+            made = [potential_layout(where, finding, asked.alpha)]
+        elif asked.axis == "age":
+            made = [age_layout(where, finding, asked.alpha)]
+        else:
+            made = [layout(where, asked.axis, finding, asked.alpha, new=False)]
+    except Unplannable as reason:
+        return _without(where, asked, str(reason))
+    best = _best(where, asked, made, plan)
+    if best.settles or asked.axis in ("potential", "age") or not finding.tested:
+        return best
+    try:
+        wider = layout(where, asked.axis, finding, asked.alpha, new=True)
+    except Unplannable:
+        return best
+    if len(wider.slots) == len(made[0].slots):
+        return best
+    other = _best(where, asked, [wider], plan)
+    return other if (other.settles, other.chance or 0) > (best.settles, best.chance or 0) else best
+
+
+def _without(where: Scene, asked: Question, why: str) -> Proposal:
+    """Return a line that says why nothing can be proposed."""
+    return Proposal(
+        where.electrode, asked.axis, asked.response, (), None, None, None, None, None,
+        settles=False, changes=asked.changes, alpha=asked.alpha,
+        why=f"nothing to propose: {why}", outcomes=asked.outcomes,
+    )  # fmt: skip
+
+
+@dataclass(frozen=True)
+class _Tried:
+    slots: tuple[int, ...]
+    cells: tuple[NewCell, ...]
+    hours: float
+    outlook: Outlook
+
+
+def _best(where: Scene, asked: Question, layouts: Sequence[Layout], plan: Plan) -> Proposal:
+    """Return the cheapest set that reaches the chance, else the best affordable one."""
+    found: list[tuple[Layout, list[_Tried]]] = [(one, _tried(one, plan)) for one in layouts]
+    pool = [(made, tried) for made, all_ in found for tried in all_]
+    within = [pair for pair in pool if pair[1].hours <= plan.affordable_h + 1e-9]
+    enough = [pair for pair in within if pair[1].outlook.chance >= plan.chance]
+    if enough:
+        made, chosen = min(enough, key=lambda pair: (pair[1].hours, -pair[1].outlook.chance))
+        return _told(where, asked, made, chosen, plan, [one[1] for one in within], "")
+    made, most = max(
+        within or pool[:1], key=lambda pair: (round(pair[1].outlook.chance, 3), -pair[1].hours)
+    )
+    dearer = [one for one in pool if one[1].outlook.chance >= plan.chance]
+    return _told(
+        where, asked, made, most, plan, [one[1] for one in within],
+        _shortfall(made, most, dearer, plan),
+    )  # fmt: skip
+
+
+def _tried(made: Layout, plan: Plan) -> list[_Tried]:
+    """Return the outlook of growing sets until one is sure enough, or too large."""
+    found = []
+    for sequence in sequences(made):
+        for n in sizes(MOST_CELLS):
+            slots = sequence[:n]
+            cells = tuple(made.slots[one].cell for one in slots)
+            hours = hours_of(cells, plan.costs)
+            seen = outlook(
+                made.problem, slots, draws=plan.draws, seed=plan.seed, show=made.show
+            )
+            found.append(_Tried(slots, cells, hours, seen))
+            if seen.chance >= max(plan.chance, 0.5) or hours > 4 * plan.affordable_h:
+                break
+    return found
+
+
+def _shortfall(
+    made: Layout, most: _Tried, dearer: Sequence[tuple[Layout, _Tried]], plan: Plan
+) -> str:
+    """Return by how much scatter or cost would have to fall, in a sentence."""
+    parts = []
+    if dearer:
+        cheapest = min((one for _, one in dearer), key=lambda one: one.hours)
+        parts.append(
+            f"{len(cheapest.cells)} cells would, at {cheapest.hours:.0f} h: the cost of a cell "
+            f"would have to fall to {plan.affordable_h / cheapest.hours:.0%}"
+        )
+    factor = falls_to(made.problem, most.slots, plan.chance, draws=500, seed=plan.seed)
+    if factor is not None and factor < 1:
+        now = math.sqrt(made.problem.scatter.typical)
+        parts.append(
+            f"the scatter between cells would have to fall from {_scatter(now, made.unit)} to "
+            f"{_scatter(now * factor, made.unit)}"
+        )
+    elif factor is None:
+        parts.append("less scatter alone would not do either: the estimate lies at a margin")
+    return f"no affordable work settles it ({plan.affordable_h:g} h): " + "; or ".join(parts)
+
+
+def _scatter(value: float, unit: str) -> str:
+    return f"{value:.2g} kJ/mol" if unit == "kJ/mol" else f"{100 * value:.2g} %"
+
+
+def _told(
+    where: Scene, asked: Question, made: Layout, chosen: _Tried, plan: Plan,
+    tried: Sequence[_Tried], shortfall: str,
+) -> Proposal:  # fmt: skip
+    e, seen = made.shown_now, chosen.outlook
+    level = 1 - where.criteria.error_probability
+    now = None if e is None else _shown(e.interval(level), made.unit)
+    expected = _expected(made, seen, asked.alpha, level)
+    settles = not shortfall
+    return Proposal(
+        electrode=where.electrode,
+        axis=asked.axis,
+        response=asked.response,
+        cells=chosen.cells,
+        hours=round(chosen.hours, 6),
+        interval_now=now,
+        interval_expected=expected,
+        chance=seen.chance,
+        responds=seen.responds,
+        settles=settles,
+        changes=asked.changes,
+        alpha=asked.alpha,
+        why=_why(asked, made, chosen, now, expected, shortfall),
+        cautions=cautions_of(chosen.cells, plan.species),
+        outcomes=asked.outcomes,
+        between=made.between,
+        unit=made.unit,
+        assumed=made.assumed,
+        frontier=tuple(
+            (one.hours, one.outlook.chance, one.cells)
+            for one in sorted(tried, key=lambda one: one.hours)
+        ),
+    )
+
+
+def _expected(
+    made: Layout, seen: Outlook, alpha: float, level: float
+) -> tuple[float, float] | None:
+    """Return the interval expected about the present estimate, at the level it is told at."""
+    from scipy.special import stdtrit
+
+    e = made.shown_now
+    if e is None or not math.isfinite(seen.half_width) or seen.df <= 0:
+        return None
+    ratio = stdtrit(seen.df, 0.5 + level / 2) / stdtrit(seen.df, 1 - alpha / 2)
+    half = seen.half_width * float(ratio)
+    return _shown((e.value - half, e.value + half), made.unit)
+
+
+def _shown(interval: tuple[float, float] | None, unit: str) -> tuple[float, float] | None:
+    if interval is None or unit != "factor":
+        return interval
+    return exponential(interval[0]), exponential(interval[1])
+
+
+_OF = {"order": "the order", "factor": "the factor", "kJ/mol": "the difference of barriers",
+       "share": "the difference of shares"}  # fmt: skip
+
+
+def _why(
+    asked: Question, made: Layout, chosen: _Tried, now: tuple[float, float] | None,
+    expected: tuple[float, float] | None, shortfall: str,
+) -> str:  # fmt: skip
+    pair = f" {made.between[0]} against {made.between[1]}" if made.between else ""
+    what = _OF[made.unit] + pair
+    unit = " kJ/mol" if made.unit == "kJ/mol" else ""
+    if made.shown_now is None:
+        moved = f"first measure of {asked.axis}"
+    else:
+        start = "none" if now is None else _range(now)
+        moved = f"interval of {what} from {start} to about {_range(expected)}{unit}"
+    text = (
+        f"{described(chosen.cells)}: {moved}; decides with chance {chosen.outlook.chance:.2f}; "
+        f"{chosen.hours:.3g} h"
+    )
+    return f"{text}; {shortfall}" if shortfall else text
+
+
+def _range(interval: tuple[float, float] | None) -> str:
+    if interval is None:
+        return "none"
+    low, high = interval
+    width = high - low
+    digits = max(0, min(4, 1 - math.floor(math.log10(width)))) if 0 < width < math.inf else 2
+    if not np.isfinite([low, high]).all() or high >= 1e4:
+        return f"{low:.2g} to {high:.2g}"
+    return f"{low:.{digits}f} to {high:.{digits}f}"
+
+
+def within_budget(
+    proposals: Sequence[Proposal], hours: float, criteria: Criteria
+) -> list[Proposal]:
+    """Return the set of proposals, at most one size each, that promises most inside `hours`.
+
+    Promise: chances added, those that change the verdict by themselves counting twice. Solved
+    exactly over half hours.
+    """
+    steps = math.floor(hours * 2 + 1e-9)
+    best: list[tuple[float, tuple[tuple[int, int], ...]]] = [(0.0, ())] * (steps + 1)
+    for place, one in enumerate(proposals):
+        weight = {ALONE: 1.0, STRENGTH: 0.3}.get(one.changes, 0.5)
+        options = [
+            (math.ceil(cost * 2 - 1e-9), weight * chance, size)
+            for size, (cost, chance, _) in enumerate(one.frontier)
+        ]
+        grown = list(best)
+        for cost, value, size in options:
+            for spent in range(cost, steps + 1):
+                before = best[spent - cost]
+                if before[0] + value > grown[spent][0] + 1e-12:
+                    grown[spent] = (before[0] + value, (*before[1], (place, size)))
+        best = grown
+    return [_resized(proposals[place], size, criteria) for place, size in best[steps][1]]
+
+
+def _resized(one: Proposal, size: int, criteria: Criteria) -> Proposal:
+    """Return the proposal with another of its sets."""
+    hours, chance, cells = one.frontier[size]
+    if cells == one.cells:
+        return one
+    why = (
+        f"{described(cells)}: the best that fits the hours; decides with chance {chance:.2f}; "
+        f"{hours:.3g} h"
+    )
+    return replace(
+        one, cells=cells, hours=hours, chance=chance, why=why, settles=False, responds=None,
+        interval_expected=None,
+    )  # fmt: skip
