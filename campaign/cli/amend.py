@@ -6,7 +6,7 @@ from typing import Annotated
 
 import typer
 
-from campaign.cli.options import By, Db, Json
+from campaign.cli.options import By, Db, Json, Reason, stated_reason
 
 
 def amend(
@@ -15,7 +15,7 @@ def amend(
     changes: Annotated[
         list[str], typer.Argument(metavar="FIELD=VALUE...", help="An empty value empties a field.")
     ],
-    reason: Annotated[str, typer.Option("--reason", metavar="TEXT", help="Why (required).")],
+    reason: Reason = None,
     by: By = None,
     db: Db = None,
     json: Json = False,
@@ -27,10 +27,9 @@ def amend(
     from campaign.ledger.amending import amend as apply
     from campaign.ledger.amending import read_changes
     from campaign.ledger.database import open_database
-    from campaign.ledger.fields import clean_text
 
     wanted = read_changes(changes)
-    changed = apply(open_database(db), kind, name, wanted, clean_text(reason, "reason"), by)
+    changed = apply(open_database(db), kind, name, wanted, stated_reason(reason), by)
     if json:
         from campaign.present.tables import show_json
 

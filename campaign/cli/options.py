@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import inspect
+import sys
 from collections.abc import Callable
 from dataclasses import dataclass, fields
 from typing import TYPE_CHECKING, Annotated, Any, get_type_hints
@@ -68,6 +69,15 @@ AsOf = Annotated[
     str | None,
     typer.Option("--as-of", metavar="DATE", help="As logged by the end of that day."),
 ]
+
+
+def stated_reason(given: str | None) -> str | None:
+    """Return the reason of a correction; asked for at a terminal where none was given."""
+    from campaign.ledger.fields import clean_text
+
+    if given is None and sys.stdin.isatty():
+        given = typer.prompt("reason (kept in the journal)", default="", show_default=False)
+    return clean_text(given, "reason") if given and given.strip() else None
 
 
 @dataclass(frozen=True)

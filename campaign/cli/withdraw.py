@@ -6,7 +6,7 @@ from typing import Annotated
 
 import typer
 
-from campaign.cli.options import By, Db, Json
+from campaign.cli.options import By, Db, Json, Reason, stated_reason
 
 
 def withdraw(
@@ -14,7 +14,7 @@ def withdraw(
         str, typer.Argument(help="electrode, electrolyte, cell, measurement, fit or import.")
     ],
     name: Annotated[str, typer.Argument(help="Its label, recipe or number.")],
-    reason: Annotated[str, typer.Option("--reason", metavar="TEXT", help="Why (required).")],
+    reason: Reason = None,
     by: By = None,
     db: Db = None,
     json: Json = False,
@@ -26,10 +26,9 @@ def withdraw(
     from campaign.errors import refused
     from campaign.ledger import withdrawing
     from campaign.ledger.database import open_database
-    from campaign.ledger.fields import clean_text
     from campaign.ledger.finding import is_number
 
-    why = clean_text(reason, "reason")
+    why = stated_reason(reason)
     database = open_database(db)
     if kind == "import":
         if not is_number(name):

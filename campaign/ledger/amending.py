@@ -28,7 +28,7 @@ def amend(
     kind: str,
     name: str,
     changes: Mapping[str, str],
-    reason: str,
+    reason: str | None = None,
     who: str | None = None,
 ) -> dict[str, tuple[Any, Any]]:
     """Amend a record; return each changed field with what it was and what it is.

@@ -25,7 +25,7 @@ HOLDERS = {"electrode": ("cell", "electrode"), "electrolyte": ("cell", "electrol
 
 
 def withdraw(
-    database: Database, kind: str, name: str, reason: str, who: str | None = None
+    database: Database, kind: str, name: str, reason: str | None = None, who: str | None = None
 ) -> dict[str, int]:
     """Withdraw one record with what hangs on it; return how many rows of each kind.
 
@@ -109,7 +109,7 @@ def imports(connection: Connection) -> list[Row]:
 
 
 def withdraw_import(
-    database: Database, number: int, reason: str, who: str | None = None
+    database: Database, number: int, reason: str | None = None, who: str | None = None
 ) -> dict[str, int]:
     """Withdraw everything one import made that is still in force; a refit it made falls back.
 
