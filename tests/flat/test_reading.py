@@ -14,9 +14,9 @@ def test_a_full_row_is_read_in_canonical_units(one):
         {"potential_V": None, "temperature_C": None, "R_ct": None, "electrode": "film A",
          "ion": "Na+", "A/mm2": "113", "configuration": "3 electrode", "E/mV": "3410",
          "T/K": "298.15", "R_ct/kΩ": "0.0412±0.0008", "Rs": "4.1(2)", "R_SEI": "absent",
-         "Q_ct/(uS s^n)": "21", "n_ct": "0.86", "rest/min": "90", "f_min/mHz": "10", "f_max/kHz": "200",
-         "cycle": "3", "amplitude/V": "0.005", "SOC/%": "50", "reference": "Na|Na+",
-         "note": "kept; as, it is"},
+         "Q_ct/(uS s^n)": "21", "n_ct": "0.86", "rest/min": "90", "f_min/mHz": "10",
+         "f_max/kHz": "200", "cycle": "3", "amplitude/V": "0.005", "SOC/%": "50",
+         "reference": "Na|Na+", "note": "kept; as, it is"},
     )  # fmt: skip
     assert table.faults == []
     values = table.rows[0].values

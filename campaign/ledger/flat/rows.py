@@ -4,8 +4,9 @@ from __future__ import annotations
 
 import csv
 import io
-from collections.abc import Mapping, Sequence
+from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass, field
+from functools import partial
 from typing import Any
 
 from campaign.errors import Fault
@@ -132,27 +133,35 @@ class RowReader:
         """Make each quantity's column, and that of its standard error, one of values."""
         for quantity in QUANTITIES:
             errors = found.pop(f"{quantity}_se", None)
-            if quantity in found:
-                values = found[quantity]
-                if errors is None or not any(errors):
-                    found[quantity] = [_as_value(value) for value in values]
-                    continue
-            elif errors is None:
+            if errors is not None and not any(errors):
+                errors = None
+            if errors is None and quantity not in found:
                 continue
             values = found.get(quantity) or [None] * reading.count
-            header = self._headers[f"{quantity}_se"]
-            found[quantity] = [
-                _as_value(value)
-                if error is None
-                else self._joined(place, value, error, header, reading)
-                for place, (value, error) in enumerate(zip(values, errors, strict=True))
-            ]
+            found[quantity] = (
+                [_as_value(value) for value in values]
+                if errors is None
+                else self._values(values, errors, self._headers[f"{quantity}_se"], reading)
+            )
+
+    def _values(
+        self, values: list[Any], errors: list[Any], header: Header, reading: _Reading
+    ) -> list[Value | None]:
+        relative = header.scale.relative
+        if not relative and set(map(type, values)) == set(map(type, errors)) == {float}:
+            return list(map(_pair, zip(values, errors, strict=True)))
+        return [
+            _as_value(value)
+            if error is None
+            else self._joined(place, value, error, header, reading)
+            for place, (value, error) in enumerate(zip(values, errors, strict=True))
+        ]
 
     def _joined(
         self, place: int, value: Any, error: float, header: Header, reading: _Reading
     ) -> Value | None:
         if type(value) is float:
-            return Value(value, error * value if header.scale.relative else error)
+            return _pair((value, error * value if header.scale.relative else error))
         quantity = header.name.removesuffix("_se")
         if value is None:
             if (place, quantity) not in reading.faulty:
@@ -271,8 +280,12 @@ class _Reading:
         return [(fault, wrong_mark) for _, _, fault, wrong_mark in self._faults]
 
 
+# A Value of a pair, without the detour over a Python function.
+_pair: Callable[[tuple[Any, Any]], Value] = partial(tuple.__new__, Value)
+
+
 def _as_value(value: Any) -> Value | None:
-    return Value(value) if type(value) is float else value
+    return _pair((value, None)) if type(value) is float else value
 
 
 def settle_area(row: FlatRow, area_cm2: float) -> None:
