@@ -97,6 +97,8 @@ def import_tables(
     with writing(database, who=who, reason=reason, dry_run=choices.dry_run) as pen:
         book = Book.read(pen)
         faults = [fault for table in tables for fault in table.faults]
+        # Rows that lack a column would only repeat what is wrong with the header.
+        tables = [table for table in tables if not table.misread]
         entering = _Entering(pen, book, choices, outcome)
         faults += entering.settle_areas([row for table in tables for row in table.rows])
         entering.load([row for table in tables for row in table.rows])

@@ -201,6 +201,23 @@ def test_every_fault_of_every_kind_at_once(bench, make_row):
     assert all(f.file == "table.csv" and f.message and f.expected for f in faults)
 
 
+@pytest.mark.parametrize(
+    ("drop", "add", "column"),
+    [
+        ("temperature_C", {}, "temperature_C"),
+        ("measured_at", {}, "measured_at"),
+        ("cell", {}, "cell"),
+        ("potential_V", {"E/furlong": 3.4}, "E/furlong"),
+        ("area_cm2", {"A/mm3": 1}, "A/mm3"),
+        ("note", {"remark of the day": "x"}, "remark of the day"),
+    ],
+)
+def test_a_fault_in_the_header_is_said_once(bench, make_row, drop, add, column):
+    rows = [{k: v for k, v in {**make_row(d), **add}.items() if k != drop} for d in (1, 2, 3)]
+    faults = bench.faults(*rows)
+    assert columns(faults) == [(1, column)]
+
+
 def test_an_electrode_without_a_stated_ion(bench, make_row):
     outcome = bench.enter(make_row(1, ion=None))
     assert any("taken to be Na" in warning for warning in outcome.warnings)
