@@ -6,6 +6,7 @@ from collections.abc import Mapping, Sequence
 from typing import Any
 
 from campaign.present.numbers import number, percent
+from campaign.present.paragraphs import say
 from campaign.present.tables import Column, show_table
 
 Row = Mapping[str, Any]
@@ -61,7 +62,8 @@ def show_budgets(budgets: Sequence[Row], title: str) -> None:
         Column("R_el", "R_el/(ohm cm2)", right=True),
         Column("largest", "largest"),
     )
-    show_table(time_rows(budgets), columns, title)
+    say(title)
+    show_table(time_rows(budgets), columns)
 
 
 def flat_shares(budgets: Sequence[Row]) -> dict[str, float | None]:

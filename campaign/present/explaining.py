@@ -107,8 +107,9 @@ def _diagnostics(row: Row) -> None:
         f"Diagnostics of {row['dominant'] or 'the dominant term'}",
     )
     for axis in AXES:
-        reason = diagnostics[axis]["decision"].partition(": ")[2]
-        reason = reason or (diagnostics[axis].get("because") if _untested(diagnostics[axis]) else "")
+        one = diagnostics[axis]
+        reason = one["decision"].partition(": ")[2]
+        reason = reason or (one.get("because") if _untested(one) else "")
         if reason:
             say(f"{axis} open: {reason}", "  ", "    ")
     _law(diagnostics["potential"])
@@ -218,6 +219,10 @@ def _carried(found: Row | None) -> None:
     if found is None or not found["influences"]:
         return
     print()
+    say(
+        "What carries the decisions: specimens whose removal moves an estimate most, in its "
+        "standard errors"
+    )
     show_table(
         [
             {
@@ -234,8 +239,6 @@ def _carried(found: Row | None) -> None:
             Column("shift", "moves by", right=True),
             Column("numbers", "its measurements"),
         ),
-        "What carries the decisions: specimens whose removal moves an estimate most, in its "
-        "standard errors",
     )
 
 

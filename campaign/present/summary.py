@@ -15,6 +15,8 @@ from campaign.present.tables import Column, show_csv, show_json, show_table
 Row = Mapping[str, Any]
 
 AXES = ("concentration", "solvent", "additive", "potential", "barrier", "age")
+# As the columns of the table call what the axes give.
+SHORT = {"concentration": "order", "barrier": "Ea"}
 GROUPS = ("salt", "solvents", "temperature")
 
 
@@ -25,7 +27,7 @@ def _columns(level: str) -> tuple[Column, ...]:
         Column("slowest", "dominant"),
         Column("order", f"order ({level})"),
         Column("solvent", "solvents"),
-        Column("Ea", "Ea/(kJ/mol)"),
+        Column("Ea", "Ea /(kJ/mol)"),
         Column("law", "law in E"),
         Column("verdict", "verdict"),
         Column("strength", "strength"),
@@ -120,7 +122,9 @@ def barriers(diagnostic: Row) -> str:
 
 
 def _short(missing: Sequence[str]) -> str:
-    named = [axis for axis in AXES if any(_about(axis, text) for text in missing)]
+    named = [
+        SHORT.get(axis, axis) for axis in AXES if any(_about(axis, text) for text in missing)
+    ]
     if missing and not named:
         return "see below"
     return ", ".join(named)

@@ -16,6 +16,11 @@ from typing import Any
 from campaign.present.numbers import number
 
 WIDEST = 100
+GAP = 2
+"""Spaces between the columns of a framed table."""
+
+NARROWEST = 8
+"""Width below which a column is not narrowed."""
 
 
 @dataclass(frozen=True)
@@ -62,38 +67,60 @@ def plain(cells: Sequence[Sequence[str]], columns: Sequence[Column], title: str 
 
 
 def _framed(cells: Sequence[Sequence[str]], columns: Sequence[Column], title: str) -> None:
+    width = min(shutil.get_terminal_size((WIDEST, 40)).columns, 160)
+    widths = _widths(cells, columns, width - GAP * (len(columns) - 1))
+    if sum(widths) + GAP * (len(columns) - 1) > width:
+        # Too narrow: a frame would cut numbers off; plain lines only run on.
+        sys.stdout.write(plain(cells, columns, title))
+        return
     from rich import box
     from rich.console import Console
     from rich.table import Table
     from rich.text import Text
 
-    width = min(shutil.get_terminal_size((WIDEST, 40)).columns, 160)
     table = Table(
         title=Text(title) if title else None,
         title_justify="left",
         box=box.HORIZONTALS,
         pad_edge=False,
+        padding=(0, 1, 0, 0),
         show_edge=False,
         header_style="bold",
     )
-    for index, column in enumerate(columns):
-        numeric = column.right
+    for column, wide in zip(columns, widths, strict=True):
         table.add_column(
             Text(column.heading),
-            justify="right" if numeric else "left",
-            no_wrap=numeric,
+            justify="right" if column.right else "left",
+            no_wrap=column.right,
             overflow="fold",
-            min_width=_longest_word(cells, index) if not numeric else None,
+            width=wide,
         )
     for row in cells:
         table.add_row(*(Text(text) for text in row))
     Console(width=width, highlight=False).print(table)
 
 
-def _longest_word(cells: Sequence[Sequence[str]], index: int) -> int:
-    """Return the width below which a word of the column would be torn apart (at most 16)."""
-    words = (len(word) for row in cells for word in row[index].split())
-    return min(max(words, default=1), 16)
+def _widths(
+    cells: Sequence[Sequence[str]], columns: Sequence[Column], available: int
+) -> list[int]:
+    """Return the width of each column: as wide as its texts, narrowed where all do not fit.
+
+    The widest column gives way first, none below its longest word; then words are torn.
+    """
+    texts = [[c.heading, *(row[i] for row in cells)] for i, c in enumerate(columns)]
+    widths = [max(len(text) for text in column) for column in texts]
+    words = [max((len(w) for text in column for w in text.split()), default=1) for column in texts]
+    for floors in (words, [min(word, NARROWEST) for word in words]):
+        least = [
+            width if column.right else floor
+            for width, column, floor in zip(widths, columns, floors, strict=True)
+        ]
+        while sum(widths) > available:
+            loose = [i for i in range(len(widths)) if widths[i] > least[i]]
+            if not loose:
+                break
+            widths[max(loose, key=lambda i: widths[i])] -= 1
+    return widths
 
 
 def clean(value: Any) -> Any:

@@ -17,14 +17,11 @@ def _columns(level: str) -> tuple[Column, ...]:
     return (
         Column("period", "end of"),
         Column("n", "readings", right=True),
-        Column("specimens", "specimens", right=True),
         Column("slowest", "dominant"),
         Column("order", f"order ({level})"),
         Column("solvent", "solvents"),
         Column("Ea", "Ea/(kJ/mol)"),
         Column("verdict", "verdict"),
-        Column("strength", "strength"),
-        Column("mark", ""),
     )
 
 
@@ -47,7 +44,8 @@ def show_timeline(
     for conclusion in found["conclusions"]:
         label = conclusion["electrode"]
         own = [_shown(row) for row in rows if row["electrode"] == label]
-        show_table(own, columns, f"{label}: {conclusion_text(conclusion)}")
+        say(f"{label}: {conclusion_text(conclusion)}")
+        show_table(own, columns)
         print()
     what = (
         "readings by the time they were entered, with the criteria of then"
@@ -81,15 +79,18 @@ def _shown(row: Row) -> dict[str, Any]:
     return {
         "period": row["period"],
         "n": row["n_measurements"],
-        "specimens": row["n_specimens"],
         "slowest": f"{row['dominant'] or '-'} {share(row['share'])}".strip(),
         "order": with_interval(row["order"], row["order_ci"]),
         "solvent": "-" if ratio is None else f"x {significant(max(ratio, 1 / ratio), 2)}",
         "Ea": "-" if barriers is None else _range(*barriers),
-        "verdict": row["text"],
-        "strength": row["strength"] or "-",
-        "mark": row["mark"],
+        "verdict": _verdict(row),
     }
+
+
+def _verdict(row: Row) -> str:
+    strength = f" ({row['strength']})" if row["strength"] else ""
+    mark = f": {row['mark']}" if row["mark"] else ""
+    return f"{row['text']}{strength}{mark}"
 
 
 def _range(low: float, high: float) -> str:
