@@ -2,20 +2,20 @@
 
 from __future__ import annotations
 
-from enum import Enum
+from enum import StrEnum
 from typing import Annotated
 
 import typer
 
 
-class Width(str, Enum):
+class Width(StrEnum):
     """Columns of a journal page a figure is drawn for."""
 
     one = "one"
     two = "two"
 
 
-class Drawn(str, Enum):
+class Drawn(StrEnum):
     """What a figure of a verdict shows."""
 
     candidates = "candidates"

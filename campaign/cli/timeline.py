@@ -7,6 +7,7 @@ from typing import Annotated
 
 import typer
 
+from campaign.cli.figures import FigureFile, FigureWidth, Width
 from campaign.cli.options import Asked, query
 
 
@@ -26,6 +27,8 @@ def timeline(
     clock: Annotated[
         Clock | None, typer.Option("--clock", help="By entry or by measurement.")
     ] = None,
+    figure: FigureFile = None,
+    width: FigureWidth = Width.two,
 ) -> None:
     """Show verdicts as they stood at the end of each period: when settled, whether flipped.
 
@@ -34,7 +37,16 @@ def timeline(
     from campaign.diagnosis.reading import followed
     from campaign.present.timeline import show_timeline
 
+    path = None
+    if figure is not None:
+        from campaign.present.figures.endings import figure_path
+
+        path = figure_path(figure)
     found = followed(
         asked.db, asked.filter, every=every, clock=clock.value if clock is not None else None
     )
     show_timeline(found, as_json=asked.json, as_csv=asked.csv, stated=asked.stated())
+    if path is not None:
+        from campaign.present.drawing import draw_timeline
+
+        draw_timeline(found["rows"], path, width.value)

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from enum import Enum
+from enum import StrEnum
 from typing import Annotated, Any
 
 import typer
@@ -11,7 +11,7 @@ from campaign.cli.figures import FigureFile, FigureWidth, Width
 from campaign.cli.options import Asked, query
 
 
-class Axis(str, Enum):
+class Axis(StrEnum):
     """The axes a resistance is followed along."""
 
     concentration = "concentration"
@@ -22,7 +22,7 @@ class Axis(str, Enum):
     age = "age"
 
 
-class Response(str, Enum):
+class Response(StrEnum):
     """The fitted quantities that can be followed."""
 
     R_el = "R_el"

@@ -17,7 +17,10 @@ if TYPE_CHECKING:
     from campaign.trends.reading import FilterSource
     from campaign.trends.results import AxisResult
 
-__all__ = ["draw_verdict", "evidence_matrix", "figure_path", "show_drawings", "summary_matrix"]
+__all__ = [
+    "draw_timeline", "draw_verdict", "evidence_matrix", "figure_path", "show_drawings",
+    "summary_matrix",
+]  # fmt: skip
 
 Row = Mapping[str, Any]
 
@@ -62,6 +65,13 @@ def draw_verdict(
     found = budgets_over_time(taken, criteria, electrodes)
     drawn = [over_time(name, one, criteria.working_time_s) for name, one in found.items()]
     _save(budget_figure(drawn, width), path)
+
+
+def draw_timeline(rows: Sequence[Row], path: Path, width: str) -> None:
+    """Write the figure of a timeline."""
+    from campaign.present.figures.timeline import timeline_figure
+
+    _save(timeline_figure(rows, width), path)
 
 
 def summary_matrix(rows: Sequence[Row]) -> Callable[[str], Figure]:

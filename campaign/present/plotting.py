@@ -114,5 +114,6 @@ def _pairs(pairs: Sequence[RatioEstimate], response: str) -> str:
             row[at(one.ratio_ci[0])] = row[at(one.ratio_ci[1])] = "|"
         row[at(one.ratio)] = "o"
         lines.append(f"{name[:room].ljust(room)} {''.join(row).rstrip()}")
-    foot = f"{significant(math.exp(low), 2)}".ljust(WIDE - 6) + f"{significant(math.exp(high), 2):>6}"
+    first, last = significant(math.exp(low), 2), significant(math.exp(high), 2)
+    foot = first.ljust(WIDE - 6) + f"{last:>6}"
     return "\n".join([*lines, " " * (room + 1) + foot])

@@ -25,7 +25,16 @@ def content(figure: Figure, kind: str) -> bytes:
     stream = io.BytesIO()
     with styled():
         figure.savefig(stream, format=kind, dpi=PNG_DPI, metadata=_METADATA[kind])
-    return stream.getvalue()
+    return _numbered(stream.getvalue()) if kind == "svg" else stream.getvalue()
+
+
+def _numbered(svg: bytes) -> bytes:
+    """Return an SVG whose drawn-up ids are numbers in order: some hold a memory address."""
+    text = svg.decode("utf-8")
+    drawn = dict.fromkeys(re.findall(r'\bid="([a-z][0-9a-f]{10})"', text))
+    for number, name in enumerate(drawn):
+        text = text.replace(name, f"{name[0]}-{number}")
+    return text.encode("utf-8")
 
 
 def save(figure: Figure, path: Path) -> None:

@@ -44,7 +44,7 @@ def _panel(panel: Axes, below: Axes, group: Sequence[Curve]) -> None:
     spread = float(y.max() / y.min())
     panel.set_ylim(y.min() / spread**0.05, y.max() * spread**0.05)
     style.plain_log(panel.yaxis, spread)
-    style.key(panel, below, title + r": $E_\mathrm{a}$ / (kJ mol$^{-1}$), form ln $R$")
+    style.key(panel, below, f"{title}: Eₐ / (kJ mol⁻¹), form ln R")
     _temperatures(panel, np.concatenate([curve.x for curve in group]))
 
 

@@ -78,7 +78,7 @@ def _series(panel: Axes, index: int, curve: Curve, name: str, shift: float) -> N
 
 def _law(estimate: PotentialEstimate) -> str:
     if estimate.law == "valley" and estimate.E0_V is not None and estimate.g is not None:
-        return f"valley, $E_0$ = {estimate.E0_V:.3f} V, $g$ = {estimate.g:.2g}"
+        return f"valley, E₀ = {estimate.E0_V:.3f} V, g = {estimate.g:.2g}"
     if estimate.law == "exponential" and estimate.slope_per_V is not None:
-        return f"exponential, {estimate.slope_per_V:.2g} V$^{{-1}}$"
+        return f"exponential, {estimate.slope_per_V:.2g} V⁻¹"
     return str(estimate.law)

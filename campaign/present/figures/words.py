@@ -29,7 +29,7 @@ def names(group: Sequence[SeriesEstimate]) -> tuple[str, list[str]]:
 
 def literal(text: str) -> str:
     """Return a user's text so that Matplotlib shows it as it is: no formula starts in it."""
-    return text.replace("\\", "\\\\").replace("$", r"\$")
+    return text.replace("$", r"\$")
 
 
 def wrapped(text: str, width_mm: float) -> str:
