@@ -226,6 +226,21 @@ def test_assumptions_are_said(one):
     assert "T/K" in table.warnings[2]
 
 
+def test_other_names_without_unit_are_said(read):
+    table = read(f"cell,measured_at,E,T,Rct,n_ct,SOC\nA,{AT},3,25,41,0.9,0.5\n")
+    assert table.faults == []
+    assert table.warnings == [
+        "t.csv: headers that state no unit were read so: E in V, T in degC, Rct in ohm"
+    ]
+
+
+def test_a_row_knows_its_headers_and_cells(read):
+    table = read(f"cell,measured_at,E/mV,T,Rct\nA,{AT},3000,25,41\n")
+    row = table.rows[0]
+    assert (row.header("potential_V"), row.raw("potential_V")) == ("E/mV", "3000")
+    assert (row.header("R_sl"), row.raw("R_sl")) == ("R_sl", None)
+
+
 def test_a_potential_header_gives_the_reference(read):
     table = read(f"cell,measured_at,E/V vs. Na+/Na,T,R_ct\nA,{AT},3,25,41\n")
     assert table.rows[0].values["reference"] == "Na/Na+"

@@ -207,7 +207,7 @@ class HeaderError(ValueError):
 
     def __init__(self, message: str, expected: str) -> None:
         self.expected = expected
-        super().__init__(message)
+        super().__init__(shown(message, 600))
 
 
 def read_header(written: str) -> Header:

@@ -8,7 +8,14 @@ from typing import Any
 
 from campaign.errors import Fault
 from campaign.ledger.flat.columns import column_for
-from campaign.ledger.flat.headers import Header, HeaderError, read_header, shown, tidy_header
+from campaign.ledger.flat.headers import (
+    COLUMNS,
+    Header,
+    HeaderError,
+    read_header,
+    shown,
+    tidy_header,
+)
 from campaign.ledger.flat.mapping import TableMapping
 from campaign.ledger.flat.rows import REQUIRED
 from campaign.ledger.flat.values import ValueFault, read_reference
@@ -59,6 +66,7 @@ def read_heading(
     _constants(heading, mapping, zone)
     _references(heading, file, line)
     _units_of_errors(heading, file, line)
+    _unstated(heading)
     _missing(heading, file, line)
     return heading
 
@@ -169,6 +177,19 @@ def _units_of_errors(heading: Heading, file: str, line: int) -> None:
                 f"'{header.written}' states no unit and was read in the canonical one, although "
                 f"'{value.written}' states another"
             )
+
+
+def _unstated(heading: Heading) -> None:
+    """Say which units were taken for other names than ours that state none."""
+    taken = [
+        f"{header.written} in {'degC' if unit == 'K' else unit}"
+        for header in heading.headers
+        if header is not None and not header.unit_stated
+        for unit in (COLUMNS[header.name][1],)
+        if unit not in ("", "1")
+    ]
+    if taken:
+        heading.warnings.append(f"headers that state no unit were read so: {', '.join(taken)}")
 
 
 def _missing(heading: Heading, file: str, line: int) -> None:

@@ -55,7 +55,7 @@ def read_table(
     zone: of times without offset. decimal: the mark, where the file does not show it.
     """
     mapping = mapping or TableMapping()
-    table = FlatTable(path.name, "0" * 64)
+    table = FlatTable(shown(path.name, 255), "0" * 64)
     try:
         source = open_source(path, sheet or mapping.sheet)
         table.sha256 = source.sha256

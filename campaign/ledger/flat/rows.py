@@ -29,9 +29,13 @@ Block = Sequence[tuple[int, Any, Sequence[Any]]]  # line, row as written, its ce
 
 @dataclass(frozen=True)
 class Form:
-    """What the rows of one file share: where each column stands, and the cells' delimiter."""
+    """What the rows of one file share.
+
+    places: where each column stands. headers: how each is written. delimiter: of the cells.
+    """
 
     places: Mapping[str, int] = field(default_factory=dict)
+    headers: Mapping[str, str] = field(default_factory=dict)
     delimiter: str = ","
 
 
@@ -64,6 +68,10 @@ class FlatRow:
             cells = next(csv.reader(lines, delimiter=self.form.delimiter), [])
         given = cells[place] if place < len(cells) else None
         return None if given is None or given == "" else str(given)
+
+    def header(self, name: str) -> str:
+        """Return a column's header as written in the file; its canonical name if it has none."""
+        return self.form.headers.get(name, name)
 
 
 class RowReader:
@@ -98,7 +106,7 @@ class RowReader:
             if header is not None
         ]
         places = {h.name: place for place, h in enumerate(headers) if h is not None}
-        self._form = Form(places, delimiter)
+        self._form = Form(places, {n: h.written for n, h in self._headers.items()}, delimiter)
         self._per_area = tuple(
             q for q in QUANTITIES if q in self._headers and self._headers[q].scale.per_area
         )

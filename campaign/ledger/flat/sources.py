@@ -46,11 +46,11 @@ def open_source(path: Path, sheet: str | None) -> Source:
 
     Faults further down in the file are raised, as Refused, by the iterator of its rows.
     """
-    name = path.name
+    name = shown(path.name, 255)
     content = _content(path)
     digest = hashlib.sha256(content).hexdigest()
     if content.startswith(b"PK\x03\x04"):
-        from campaign.ledger.flat.sheets import sheet_rows
+        from campaign.ledger.flat.workbooks import sheet_rows
 
         return Source(name, digest, sheet_rows(name, content, sheet), typed=True)
     if content.startswith(b"\xd0\xcf\x11\xe0"):
@@ -76,17 +76,17 @@ def _content(path: Path) -> bytes:
     except OSError as error:
         raise refused(
             f"the file cannot be read: {error.strerror or error}",
-            file=str(path),
+            file=shown(path, 500),
             expected="a readable file",
         ) from None
     if len(content) > LARGEST:
         raise refused(
             f"the file is larger than the {LARGEST >> 20} MB that are read; split it",
-            file=str(path),
+            file=shown(path, 500),
             expected="a smaller file",
         )
     if not content.strip():
-        raise refused("the file is empty", file=path.name, expected="a header and rows")
+        raise refused("the file is empty", file=shown(path.name, 255), expected="a header and rows")
     return content
 
 

@@ -50,7 +50,7 @@ class ValueFault(ValueError):
 
     def __init__(self, message: str, expected: str) -> None:
         self.expected = expected
-        super().__init__(message)
+        super().__init__(shown(message, 600))
 
 
 @dataclass(frozen=True)
