@@ -13,6 +13,7 @@ from campaign.cli import (
     backup,
     check,
     copy,
+    coverage,
     criteria,
     demo,
     explain,
@@ -21,6 +22,7 @@ from campaign.cli import (
     init,
     listing,
     log,
+    next,
     show,
     summary,
     template,
@@ -84,6 +86,8 @@ app.command("trend", rich_help_panel=ANSWER)(trend.trend)
 app.command("summary", rich_help_panel=ANSWER)(summary.summary)
 app.command("explain", rich_help_panel=ANSWER)(explain.explain)
 app.command("timeline", rich_help_panel=ANSWER)(timeline.timeline)
+app.command("coverage", rich_help_panel=ANSWER)(coverage.coverage)
+app.command("next", rich_help_panel=ANSWER)(next.next_steps)
 
 
 def main() -> None:

@@ -128,14 +128,17 @@ def condition_of(readings: Readings, rows: Sequence[int], after_d: float = 0.0) 
     reference = _commonest(readings.reference[index])
     same = index[readings.reference[index] == reference]
     return Condition(
-        temperature_K=round(float(readings.temperature_K[same].mean()), 1)
-        if len(same) > 1 else float(readings.temperature_K[same][0]),
+        temperature_K=_in_tenths_of_a_degree(float(readings.temperature_K[same].mean())),
         potential_V=_mean(readings.potential_V[same], 3),
         reference=str(reference),
         ion_content=_mean(readings.ion_content[same], 3),
         E_half_V=_mean(readings.E_half_V[same], 3),
         after_d=after_d,
     )  # fmt: skip
+
+
+def _in_tenths_of_a_degree(temperature_K: float) -> float:
+    return round(round(temperature_K - ZERO_CELSIUS_K, 1) + ZERO_CELSIUS_K, 6)
 
 
 def _mean(values: Any, digits: int) -> float:

@@ -31,6 +31,7 @@ from campaign.diagnosis.summary import (
     of_electrode,
     settle,
 )
+from campaign.diagnosis.verdict import Judged
 from campaign.diagnosis.wording import exponential
 from campaign.ledger.costs import Costs
 from campaign.ledger.criteria import Criteria
@@ -44,6 +45,9 @@ CHANCE = 0.8
 
 AFFORDABLE_h = 120.0
 """Bench hours a single proposal may take unless a budget says otherwise [h]."""
+
+LEAST_CHANCE = 0.3
+"""Work with less chance than this is not worth filling a budget with."""
 
 LARGEST = "largest term"
 """The axis name under which more cells at the reference condition are proposed."""
@@ -120,6 +124,16 @@ class Proposal:
         return row
 
 
+@dataclass(frozen=True)
+class Planned:
+    """One electrode: its verdict as it stands, and a proposal for every open question."""
+
+    electrode: str
+    verdict: str
+    strength: str | None
+    proposals: tuple[Proposal, ...]
+
+
 def propose(
     snapshot: Snapshot,
     criteria: Criteria,
@@ -127,23 +141,26 @@ def propose(
     *,
     electrodes: Sequence[str] | None = None,
     axes: Sequence[str] | None = None,
-) -> list[Proposal]:
-    """Return a proposal for every open diagnostic that can change a verdict, best first.
+) -> list[Planned]:
+    """Return the proposals of every electrode, in alphabetical order; `ranked` puts them in one.
 
-    Those that settle come first, then those that change the verdict by themselves, then the
-    fewer bench hours. electrodes, axes: only these.
+    electrodes, axes: only these.
     """
     how = plan or Plan()
     labels = sorted(set(snapshot.readings.electrode.tolist()))
-    found: list[Proposal] = []
-    for label in labels:
-        if electrodes is None or label in electrodes:
-            found += of_one(snapshot, criteria, label, how, axes)
-    return ranked(found)
+    return [
+        of_one(snapshot, criteria, label, how, axes)
+        for label in labels
+        if electrodes is None or label in electrodes
+    ]
 
 
 def ranked(proposals: Sequence[Proposal]) -> list[Proposal]:
-    """Return proposals best first."""
+    """Return proposals best first.
+
+    Those that settle their question come first, then those that change more than the strength,
+    then the fewer bench hours.
+    """
 
     def rank(one: Proposal) -> tuple[float, ...]:
         hours = math.inf if one.hours is None else one.hours
@@ -158,30 +175,42 @@ def of_one(
     electrode: str,
     plan: Plan,
     axes: Sequence[str] | None = None,
-) -> list[Proposal]:
-    """Return the proposals of one electrode, one a question."""
+) -> Planned:
+    """Return the proposals of one electrode, one a question; none where the verdict is strong."""
     part = of_electrode(snapshot, electrode)
     outcome = settle(part, criteria, electrode, trend_evidence)
-    alpha = criteria.error_probability
+    verdict = outcome.verdict
+    found: list[Proposal] = []
+    if verdict.strength != "strong":
+        for judged in outcome.judged.values():
+            found += _of_term(snapshot, criteria, electrode, outcome, judged, plan, axes)
+        if axes is None or LARGEST in axes:
+            found += _largest(snapshot, criteria, electrode, outcome, plan)
+    return Planned(electrode, verdict.word, verdict.strength, tuple(ranked(found)))
+
+
+def _of_term(
+    snapshot: Snapshot, criteria: Criteria, electrode: str, outcome: Outcome, judged: Judged,
+    plan: Plan, axes: Sequence[str] | None,
+) -> list[Proposal]:  # fmt: skip
+    part = of_electrode(snapshot, electrode)
     absent = absent_responses(part.readings, outcome.budget)
-    coded = source(part, criteria, electrode)
-    found = []
+    asked = [
+        one
+        for one in questions(judged, criteria.error_probability, absent)
+        if axes is None or one.axis in axes
+    ]
+    if not asked:
+        return []
     peers = [one for one in sorted(set(snapshot.readings.electrode.tolist())) if one != electrode]
-    for judged in outcome.judged.values():
-        asked = [
-            one for one in questions(judged, alpha, absent) if axes is None or one.axis in axes
-        ]
-        if not asked:
-            continue
-        others = [_drawn(snapshot, criteria, peer, judged.response) for peer in peers]
-        whole = draw(part, coded, judged.response)
-        where = scene(snapshot, criteria, electrode, whole, others)
-        for one in asked:
-            finding = judged.evidence[one.axis]
-            assert isinstance(finding, Finding)
-            found.append(_proposal(where, one, finding, plan))
-    if axes is None or LARGEST in axes:
-        found += _largest(snapshot, criteria, electrode, outcome, plan)
+    others = [_drawn(snapshot, criteria, peer, judged.response) for peer in peers]
+    whole = _drawn(snapshot, criteria, electrode, judged.response)
+    where = scene(snapshot, criteria, electrode, whole, others)
+    found = []
+    for one in asked:
+        finding = judged.evidence[one.axis]
+        assert isinstance(finding, Finding)
+        found.append(_proposal(where, one, finding, plan))
     return found
 
 
@@ -401,9 +430,7 @@ def _range(interval: tuple[float, float] | None) -> str:
     return f"{low:.{digits}f} to {high:.{digits}f}"
 
 
-def within_budget(
-    proposals: Sequence[Proposal], hours: float, criteria: Criteria
-) -> list[Proposal]:
+def within_budget(proposals: Sequence[Proposal], hours: float) -> list[Proposal]:
     """Return the set of proposals, at most one size each, that promises most inside `hours`.
 
     Promise: chances added, those that change the verdict by themselves counting twice. Solved
@@ -416,6 +443,7 @@ def within_budget(
         options = [
             (math.ceil(cost * 2 - 1e-9), weight * chance, size)
             for size, (cost, chance, _) in enumerate(one.frontier)
+            if chance >= LEAST_CHANCE
         ]
         grown = list(best)
         for cost, value, size in options:
@@ -424,10 +452,10 @@ def within_budget(
                 if before[0] + value > grown[spent][0] + 1e-12:
                     grown[spent] = (before[0] + value, (*before[1], (place, size)))
         best = grown
-    return [_resized(proposals[place], size, criteria) for place, size in best[steps][1]]
+    return [_resized(proposals[place], size) for place, size in best[steps][1]]
 
 
-def _resized(one: Proposal, size: int, criteria: Criteria) -> Proposal:
+def _resized(one: Proposal, size: int) -> Proposal:
     """Return the proposal with another of its sets."""
     hours, chance, cells = one.frontier[size]
     if cells == one.cells:

@@ -134,3 +134,24 @@ def set_costs(
                 row["record"] = stored[name]["record"]
             pen.make(entry, table, row)
     return changed
+
+
+def change_costs(
+    db: str | None, texts: list[str], reason: str | None, who: str | None = None
+) -> list[str]:
+    """Set costs from NAME=HOURS texts; return what changed, a sentence each.
+
+    Raises Refused without a reason and for texts that cannot be read, nothing written.
+    """
+    from campaign.ledger.database import open_database
+    from campaign.ledger.fields import clean_text
+
+    changes = read_cost_texts(texts)
+    if reason is None:
+        raise refused(
+            "setting a cost needs a reason, which the journal keeps; give --reason TEXT",
+            column="reason",
+            expected="--reason TEXT",
+        )
+    changed = set_costs(open_database(db), changes, clean_text(reason, "reason"), who)
+    return [f"{name} is now {now:g} h (was {was:g} h)." for name, (was, now) in changed.items()]
