@@ -11,7 +11,7 @@ import numpy as np
 from campaign.diagnosis.assignment import Check, assignment_checks, failed
 from campaign.diagnosis.budget import RESPONSE_OF, TERMS, Budget, Crossing, budget, crossings
 from campaign.diagnosis.engine import Assessment, Evidence, assess
-from campaign.diagnosis.lazy import trend_evidence
+from campaign.diagnosis.lazy import trend_evidence as trend_evidence
 from campaign.diagnosis.signatures import AXES, candidates
 from campaign.diagnosis.verdict import (
     Judged,

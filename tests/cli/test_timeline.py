@@ -104,3 +104,40 @@ def test_bad_spacing_is_one_sentence(imported):
     assert (code, out) == (1, "")
     assert "'fortnight', which is not a period" in err
     assert imported("timeline", "--clock", "sundial")[0] == 2
+
+
+@pytest.fixture
+def written_on(typed, tmp_path, monkeypatch):
+    """Write to the journal as if on a given day."""
+
+    def run(day, *words):
+        monkeypatch.setattr("campaign.ledger.journal.now", lambda: f"{day}T12:00:00.000000Z")
+        code, _, err = typed(*words)
+        assert code == 0, err
+
+    def table(name, first, count):
+        path = tmp_path / name
+        path.write_text(HEADER + rows(first, count), encoding="utf-8")
+        return path
+
+    run.table = table
+    return run
+
+
+def test_the_logged_clock_takes_readings_and_criteria_of_then(typed, written_on):
+    written_on("2030-01-10", "import", written_on.table("a.csv", 0, 3))
+    written_on("2030-02-10", "criteria", "--set", "error_probability=0.2", "--reason", "looser")
+    written_on("2030-03-10", "import", written_on.table("b.csv", 3, 3))
+    # two days' imports hold one half each: not over half
+    assert json.loads(typed("timeline", "--json")[1])["clock"] == "logged"
+    written_on("2030-04-10", "withdraw", "measurement", "6", "--reason", "spilled")
+    found = json.loads(typed("timeline", "--clock", "logged", "--json")[1])
+    assert [(row["period"], row["n_measurements"]) for row in found["rows"]] == [
+        ("2030-01", 3), ("2030-02", 3), ("2030-03", 6), ("2030-04", 5),
+    ]  # fmt: skip
+    january, february = (row["share_ci"] for row in found["rows"][:2])
+    # the same readings, with the criteria of then: a narrower interval from February on
+    assert february[1] - february[0] < january[1] - january[0]
+    then = ("--clock", "logged", "--as-of", "2030-03-31")
+    until_march = json.loads(typed("timeline", *then, "--json")[1])
+    assert until_march["rows"] == found["rows"][:3]
