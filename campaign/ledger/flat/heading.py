@@ -21,8 +21,6 @@ from campaign.ledger.flat.rows import REQUIRED
 from campaign.ledger.flat.values import ValueFault, read_reference
 from campaign.ledger.quantities import QUANTITIES
 
-UNKNOWN = "a header of the flat table, or a mapping file that renames or ignores it"
-
 
 @dataclass
 class Heading:

@@ -228,18 +228,23 @@ def _note_assumptions(table: FlatTable) -> None:
     assumed = sum(1 for instant in instants if instant.zone_assumed)
     if assumed:
         table.warnings.append(
-            f"{table.file}: {assumed} times without offset were read in the campaign's zone"
+            f"{table.file}: {_count(assumed, 'time')} without offset read in the campaign's zone"
         )
     dates = sum(1 for instant in instants if instant.date_only)
     if dates:
         table.warnings.append(
-            f"{table.file}: {dates} measurements give a date and no time of day; 00:00 was taken"
+            f"{table.file}: {_count(dates, 'measurement')} with a date and no time of day; 00:00 "
+            "was taken"
         )
     kelvin = [row.values["temperature_K"] for row in table.rows if "temperature_K" in row.values]
     if kelvin and min(kelvin) > 273.15 + 200:
         table.warnings.append(
             f"{table.file}: every temperature is above 200 degC; if they are in kelvin, write T/K"
         )
+
+
+def _count(number: int, noun: str) -> str:
+    return f"{number} {noun}" if number == 1 else f"{number} {noun}s"
 
 
 def row_from_mapping(
