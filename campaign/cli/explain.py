@@ -6,6 +6,7 @@ from typing import Annotated
 
 import typer
 
+from campaign.cli import completing
 from campaign.cli.figures import Drawn, FigureFile, FigureOf, FigureWidth, Width
 from campaign.cli.options import Asked, query
 from campaign.cli.summary import At
@@ -13,7 +14,12 @@ from campaign.cli.summary import At
 
 @query
 def explain(
-    label: Annotated[str, typer.Argument(metavar="ELECTRODE", help="Its label.")],
+    label: Annotated[
+        str,
+        typer.Argument(
+            metavar="ELECTRODE", help="Its label.", autocompletion=completing.of("electrode")
+        ),
+    ],
     asked: Asked,
     at: At = None,
     figure: FigureFile = None,

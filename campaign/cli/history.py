@@ -6,16 +6,26 @@ from typing import Annotated
 
 import typer
 
+from campaign.cli import completing
 from campaign.cli.options import Csv, Db, Json
 
 
 def history(
     kind: Annotated[
         str | None,
-        typer.Argument(help="electrode, electrolyte, cell, measurement or fit.", metavar="[KIND"),
+        typer.Argument(
+            help="electrode, electrolyte, cell, measurement or fit.",
+            metavar="[KIND",
+            autocompletion=completing.kind_of_record,
+        ),
     ] = None,
     name: Annotated[
-        str | None, typer.Argument(help="Its label, recipe or number.", metavar="NAME]")
+        str | None,
+        typer.Argument(
+            help="Its label, recipe or number.",
+            metavar="NAME]",
+            autocompletion=completing.name_of_record,
+        ),
     ] = None,
     db: Db = None,
     json: Json = False,

@@ -46,8 +46,10 @@ def import_tables(
     from campaign.ledger.importing import Choices
     from campaign.ledger.importing import import_tables as enter
     from campaign.present.importing import show_outcome
+    from campaign.present.progress import progress_bar
 
     database = open_database(db)
     tables = read_files(database, files, mapping=mapping, decimal=decimal, sheet=sheet)
-    outcome = enter(database, tables, Choices(refit, restore, dry_run), by, reason)
+    with progress_bar():
+        outcome = enter(database, tables, Choices(refit, restore, dry_run), by, reason)
     show_outcome(outcome, as_json=json)

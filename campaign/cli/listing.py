@@ -7,6 +7,7 @@ from typing import Annotated
 
 import typer
 
+from campaign.cli.emptied import tell_if_empty
 from campaign.cli.options import Asked, query
 
 
@@ -41,3 +42,5 @@ def list_records(
     from campaign.present.listing import show_list
 
     show_list(what.value, rows, as_json=asked.json, as_csv=asked.csv, stated=asked.stated())
+    if not asked.json and what is not Kind.imports:
+        tell_if_empty(rows, asked)

@@ -8,8 +8,11 @@ from typing import Annotated, Any
 
 import typer
 
+from campaign.cli import completing
 from campaign.cli.options import By, Db, Json
 from campaign.ledger.flat.headers import CANONICAL
+
+COMPLETED = ("electrode", "electrolyte", "cell", "specimen", "operator")
 
 
 def _log(
@@ -62,7 +65,11 @@ def _parameters() -> list[inspect.Parameter]:
             inspect.Parameter.KEYWORD_ONLY,
             default=None,
             annotation=Annotated[
-                str | None, typer.Option(f"--{name}", metavar="VALUE", show_default=False)
+                str | None,
+                typer.Option(
+                    f"--{name}", metavar="VALUE", show_default=False,
+                    autocompletion=completing.of(name) if name in COMPLETED else None,
+                ),
             ],
         )
         for name in CANONICAL

@@ -31,6 +31,7 @@ from campaign.cli import (
     upgrade,
     withdraw,
 )
+from campaign.cli.grouping import Grouped
 from campaign.errors import Fault, Refused, refused
 
 WRONG_USAGE = 2
@@ -38,6 +39,7 @@ AS_JSON = "--json"
 
 app = typer.Typer(
     name="campaign",
+    cls=Grouped,
     help="A ledger of an electrode test campaign that names the rate-limiting step.",
     rich_markup_mode=None,
     pretty_exceptions_enable=False,

@@ -10,6 +10,8 @@ from typing import TYPE_CHECKING, Annotated, Any, get_type_hints
 
 import typer
 
+from campaign.cli import completing
+
 if TYPE_CHECKING:
     from sqlalchemy import Connection
 
@@ -35,19 +37,31 @@ Reason = Annotated[
 ]
 Electrode = Annotated[
     str | None,
-    typer.Option("--electrode", metavar="LABEL", help="This electrode only."),
+    typer.Option(
+        "--electrode", metavar="LABEL", help="This electrode only.",
+        autocompletion=completing.of("electrode"),
+    ),
 ]
 Salt = Annotated[
     str | None,
-    typer.Option("--salt", metavar="SALT", help="This salt only, such as NaPF6."),
+    typer.Option(
+        "--salt", metavar="SALT", help="This salt only, such as NaPF6.",
+        autocompletion=completing.of("salt"),
+    ),
 ]
 Solvents = Annotated[
     str | None,
-    typer.Option("--solvents", metavar="BLEND", help='This blend only, such as "EC:DMC 1:1".'),
+    typer.Option(
+        "--solvents", metavar="BLEND", help='This blend only, such as "EC:DMC 1:1".',
+        autocompletion=completing.of("solvents"),
+    ),
 ]
 Additives = Annotated[
     str | None,
-    typer.Option("--additives", metavar="TEXT", help='This additive only, such as "2 wt% FEC".'),
+    typer.Option(
+        "--additives", metavar="TEXT", help='This additive only, such as "2 wt% FEC".',
+        autocompletion=completing.of("additives"),
+    ),
 ]
 Potential = Annotated[
     str | None,

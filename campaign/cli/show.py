@@ -6,12 +6,24 @@ from typing import Annotated
 
 import typer
 
+from campaign.cli import completing
 from campaign.cli.options import Db, Json
 
 
 def show(
-    kind: Annotated[str, typer.Argument(help="electrode, electrolyte, cell, measurement or fit.")],
-    name: Annotated[str, typer.Argument(help="Its label, recipe or record number.")],
+    kind: Annotated[
+        str,
+        typer.Argument(
+            help="electrode, electrolyte, cell, measurement or fit.",
+            autocompletion=completing.kind_of_record,
+        ),
+    ],
+    name: Annotated[
+        str,
+        typer.Argument(
+            help="Its label, recipe or record number.", autocompletion=completing.name_of_record
+        ),
+    ],
     db: Db = None,
     json: Json = False,
 ) -> None:

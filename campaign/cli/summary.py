@@ -7,6 +7,7 @@ from typing import Annotated
 
 import typer
 
+from campaign.cli.emptied import tell_if_empty
 from campaign.cli.figures import Drawn, FigureFile, FigureOf, FigureWidth, Width
 from campaign.cli.options import Asked, query
 
@@ -70,6 +71,8 @@ def summary(
         as_latex=latex,
         stated=asked.stated(),
     )
+    if not asked.json:
+        tell_if_empty(found["rows"], asked)
     if path is not None:
         from campaign.present.drawing import draw_verdict, summary_matrix
 

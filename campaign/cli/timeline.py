@@ -7,6 +7,7 @@ from typing import Annotated
 
 import typer
 
+from campaign.cli.emptied import tell_if_empty
 from campaign.cli.figures import FigureFile, FigureWidth, Width
 from campaign.cli.options import Asked, query
 
@@ -46,6 +47,8 @@ def timeline(
         asked.db, asked.filter, every=every, clock=clock.value if clock is not None else None
     )
     show_timeline(found, as_json=asked.json, as_csv=asked.csv, stated=asked.stated())
+    if not asked.json:
+        tell_if_empty(found["rows"], asked)
     if path is not None:
         from campaign.present.drawing import draw_timeline
 

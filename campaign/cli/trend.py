@@ -7,6 +7,7 @@ from typing import Annotated, Any
 
 import typer
 
+from campaign.cli.emptied import tell_if_empty
 from campaign.cli.figures import FigureFile, FigureWidth, Width
 from campaign.cli.options import Asked, query
 
@@ -100,6 +101,8 @@ def trend(
     show_trend(
         result, as_json=asked.json, as_csv=asked.csv, rows=rows, stated=asked.stated()
     )
+    if not asked.json:
+        tell_if_empty(result.estimates, asked)
     if path is not None or (plot and not (asked.json or asked.csv)):
         from campaign.present.drawing import show_drawings
         from campaign.trends.curves import read_curves

@@ -6,14 +6,24 @@ from typing import Annotated
 
 import typer
 
+from campaign.cli import completing
 from campaign.cli.options import By, Db, Json, Reason, stated_reason
 
 
 def withdraw(
     kind: Annotated[
-        str, typer.Argument(help="electrode, electrolyte, cell, measurement, fit or import.")
+        str,
+        typer.Argument(
+            help="electrode, electrolyte, cell, measurement, fit or import.",
+            autocompletion=completing.kind_of_record,
+        ),
     ],
-    name: Annotated[str, typer.Argument(help="Its label, recipe or number.")],
+    name: Annotated[
+        str,
+        typer.Argument(
+            help="Its label, recipe or number.", autocompletion=completing.name_of_record
+        ),
+    ],
     reason: Reason = None,
     by: By = None,
     db: Db = None,

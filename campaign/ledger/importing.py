@@ -16,6 +16,7 @@ from campaign.ledger.book import Book
 from campaign.ledger.flat.rows import settle_area
 from campaign.ledger.instants import format_utc
 from campaign.ledger.journal import Entry, Pen, writing
+from campaign.ledger.progress import counted
 from campaign.ledger.quantities import QUANTITIES
 from campaign.ledger.resolving import Resolver
 from campaign.ledger.stored import Stored, Values, same_number, stored_measurements
@@ -215,7 +216,7 @@ class _Entering:
         fresh = [row for row in rows if not self._unchanged(row)]
         faults = resolver.resolve(fresh)
         faults += resolver.compare([row for row in rows if self._unchanged(row)])
-        for row in rows:
+        for row in counted(rows, "rows entered"):
             faults += self._enter_row(entry, row, resolver)
         return faults
 

@@ -2,12 +2,12 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping, Sequence
+from collections.abc import Callable, Mapping, Sequence
 from typing import Any
 
-from campaign.present.numbers import number, with_error
+from campaign.present.numbers import concise, number, with_error
 from campaign.present.refusals import note
-from campaign.present.tables import Column, show_csv, show_json, show_table
+from campaign.present.tables import Column, at_terminal, fits, show_csv, show_json, show_table
 
 Row = Mapping[str, Any]
 
@@ -97,14 +97,22 @@ COLUMNS: dict[str, tuple[Column, ...]] = {
 }
 
 
-def _with_errors(row: Row) -> Row:
+def _with_errors(row: Row, join: Callable[[Any, Any], str]) -> Row:
     """Join each value with its standard error, as people read them."""
     joined = dict(row)
     for key in row:
         error = row.get(f"{key}_se")
         if error is not None and not isinstance(row[key], str):
-            joined[key] = with_error(row[key], error)
+            joined[key] = join(row[key], error)
     return joined
+
+
+def _readable(rows: Sequence[Row], columns: Sequence[Column]) -> list[Row]:
+    """Return rows with errors joined, in the short form where a terminal is too narrow."""
+    wide = [_with_errors(row, with_error) for row in rows]
+    if at_terminal() and not fits(wide, columns):
+        return [_with_errors(row, concise) for row in rows]
+    return wide
 
 
 def show_list(
@@ -121,7 +129,7 @@ def show_list(
     elif as_csv:
         show_csv(rows)
     elif rows:
-        show_table([_with_errors(row) for row in rows], COLUMNS[kind])
+        show_table(_readable(rows, COLUMNS[kind]), COLUMNS[kind])
     if not rows and not as_json:
         asked = ", ".join(f"--{k.replace('_', '-')} {v}" for k, v in (stated or {}).items())
         note(f"No {kind} match {asked}." if asked else f"There are no {kind} yet.")

@@ -70,6 +70,16 @@ def with_error(value: float | None, error: float | None) -> str:
     return f"{value:.{decimals}f} ± {error:.{decimals}f}"
 
 
+def concise(value: float | None, error: float | None) -> str:
+    """Return 'value(error)', the error in units of the last digit shown (GUM, 7.2.2)."""
+    if value is None or error is None or not error > 0:
+        return number(value)
+    decimals = decimals_of(error)
+    shown = round(error, decimals)
+    digits = f"{shown:.0f}" if decimals == 0 else str(round(shown * 10**decimals))
+    return f"{value:.{decimals}f}({digits})"
+
+
 def share(value: float | None) -> str:
     """Return a share as a whole percentage."""
     return "" if value is None or math.isnan(value) else f"{100 * value:.0f} %"

@@ -50,6 +50,15 @@ def show_table(
         sys.stdout.write(plain(cells, kept, title))
 
 
+def fits(rows: Sequence[Mapping[str, Any]], columns: Sequence[Column]) -> bool:
+    """Return whether a table fits the terminal without a number being cut off."""
+    kept = [c for c in columns if any(c.show(row.get(c.key)) for row in rows)]
+    cells = [[c.show(row.get(c.key)) for c in kept] for row in rows]
+    gaps = GAP * (len(kept) - 1)
+    width = min(shutil.get_terminal_size((WIDEST, 40)).columns, 160)
+    return sum(_widths(cells, kept, width - gaps)) + gaps <= width
+
+
 def plain(cells: Sequence[Sequence[str]], columns: Sequence[Column], title: str = "") -> str:
     """Return aligned columns without frame or colour, two spaces apart."""
     headings = [column.heading for column in columns]
@@ -85,7 +94,7 @@ def _framed(cells: Sequence[Sequence[str]], columns: Sequence[Column], title: st
         pad_edge=False,
         padding=(0, 1, 0, 0),
         show_edge=False,
-        header_style="bold",
+        header_style="" if os.environ.get("NO_COLOR") else "bold",
     )
     for column, wide in zip(columns, widths, strict=True):
         table.add_column(

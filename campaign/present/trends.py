@@ -6,6 +6,7 @@ from collections.abc import Mapping, Sequence
 from typing import Any
 
 from campaign.present.numbers import number, share, with_interval
+from campaign.present.paragraphs import say
 from campaign.present.refusals import note
 from campaign.present.tables import Column, show_csv, show_json, show_table
 from campaign.trends.results import AxisResult
@@ -168,13 +169,14 @@ def _remarks(content: Row, rows: bool) -> None:
                 f"{item['residual']:+.1f} studentised residuals off; shown, not dropped"
             )
     for text in dict.fromkeys(said):
-        print(f"Note: {text}")
+        say(text, "Note: ", "    ")
     for item in content["left_out"]:
         series = " ".join(
             str(item[key]) for key in ("electrode", "salt", "solvents", "additives") if item[key]
         )
-        print(f"Left out: {item['count']} {f'({series}) ' if series else ''}- {item['reason']}")
+        named = f"({series}) " if series else ""
+        say(f"{item['count']} {named}- {item['reason']}", "Left out: ", "    ")
     if rows:
         for row in content["estimates"]:
             numbers = ", ".join(number(n) for n in row["rows"])
-            print(f"Measurements of {_series(row)}: {numbers}")
+            say(f"{_series(row)}: {numbers}", "Measurements of ", "    ")
