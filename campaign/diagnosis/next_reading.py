@@ -7,9 +7,9 @@ from dataclasses import asdict, dataclass, replace
 from typing import TYPE_CHECKING, Any
 
 from campaign.diagnosis.next_proposals import (
-    AFFORDABLE_h,
     CHANCE,
     LARGEST,
+    AFFORDABLE_h,
     Plan,
     Planned,
     Proposal,

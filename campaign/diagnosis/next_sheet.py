@@ -25,7 +25,7 @@ def run_order(cells: Sequence[NewCell], seed: int) -> list[tuple[int, NewCell]]:
     """Return (block, cell) in the order the cells are to be built."""
     rng = np.random.default_rng(seed)
     kinds = grouped(cells)
-    found = []
+    found: list[tuple[int, NewCell]] = []
     for block in range(max((count for _, count in kinds), default=0)):
         inside = [kind for kind, count in kinds if count > block]
         found += [(block + 1, inside[place]) for place in rng.permutation(len(inside))]

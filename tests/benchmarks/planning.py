@@ -258,8 +258,9 @@ def calibrate(wanted: int, nothing: float, most: int) -> None:
             f"{axis} {np.mean([h for _, h in v]):.2f}/{np.mean([c for c, _ in v]):.2f} ({len(v)})"
             for axis, v in sorted(axes.items())
         )
-        print(f"{low:.2f}-{high:.2f} {len(results):>11}  {stated:>10.3f}  {met / len(results):>6.3f}"
-              f"  {interval[0]:>6.3f}-{interval[1]:.3f}  {met / len(results) - stated:>+10.3f}  "
+        share = met / len(results)
+        print(f"{low:.2f}-{high:.2f} {len(results):>11}  {stated:>10.3f}  {share:>6.3f}"
+              f"  {interval[0]:>6.3f}-{interval[1]:.3f}  {share - stated:>+10.3f}  "
               f"{told}")  # fmt: skip
 
 
