@@ -14,10 +14,10 @@ HEADER = (
 )
 
 
-def table(order=0.3, between=0.12, seed=3):
+def table(order=0.3, between=0.12, seed=5):
     """Four cells at two concentrations, three temperatures each, in random order."""
     rng = random.Random(seed)
-    cells = [c for c in (0.25, 1.0) for _ in range(2)]
+    cells = [c for c in (0.1, 1.0) for _ in range(2)]
     rng.shuffle(cells)
     lines = [HEADER]
     for i, c in enumerate(cells):
