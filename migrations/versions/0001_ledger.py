@@ -25,6 +25,8 @@ branch_labels = None
 depends_on = None
 
 REAL = sa.Double().with_variant(sa.types.REAL(), "sqlite")
+# Bytewise order on a server, whatever its locale: as in SQLite, and as the digests are taken.
+TEXT = sa.Text().with_variant(sa.Text(collation="C"), "postgresql")
 KELVIN = "-273.15"
 
 QUANTITIES = {
@@ -48,7 +50,7 @@ def _real(name: str, *checks: str, required: bool = False) -> list[sa.schema.Sch
 
 
 def _text(name: str, *checks: str, required: bool = False) -> list[sa.schema.SchemaItem]:
-    column = sa.Column(name, sa.Text, nullable=not required)
+    column = sa.Column(name, TEXT, nullable=not required)
     return [column, *(sa.CheckConstraint(check) for check in (said(name), *checks))]
 
 
@@ -109,8 +111,8 @@ def _journal() -> None:
         *_text("before"),
         *_text("after"),
         *_text("reason"),
-        sa.Column("previous", sa.Text, nullable=False, unique=True),
-        sa.Column("hash", sa.Text, nullable=False, unique=True),
+        sa.Column("previous", TEXT, nullable=False, unique=True),
+        sa.Column("hash", TEXT, nullable=False, unique=True),
         sa.CheckConstraint("length(previous) = 64 AND length(hash) = 64"),
     )
     _create(
@@ -198,7 +200,7 @@ def _electrolytes() -> None:
     _create(
         "electrolyte_property",
         *_link("electrolyte", "electrolyte", key=True),
-        sa.Column("property", sa.Text, primary_key=True),
+        sa.Column("property", TEXT, primary_key=True),
         sa.Column("temperature_K", REAL, primary_key=True),
         sa.CheckConstraint("property IN ('conductivity_S_cm', 'activity_coefficient')"),
         sa.CheckConstraint(finite_above("temperature_K")),
@@ -311,7 +313,7 @@ def _fits() -> None:
     )
     _create(
         "quantity",
-        sa.Column("name", sa.Text, primary_key=True),
+        sa.Column("name", TEXT, primary_key=True),
         *_text("unit", required=True),
     )
     op.bulk_insert(
@@ -321,7 +323,7 @@ def _fits() -> None:
     _create(
         "fitted_value",
         *_link("fit", "fit", key=True),
-        sa.Column("quantity", sa.Text, sa.ForeignKey("quantity.name"), primary_key=True),
+        sa.Column("quantity", TEXT, sa.ForeignKey("quantity.name"), primary_key=True),
         # An empty value means: the arc was looked for and is not there.
         *_real("value", finite_above("value")),
         *_real("se", finite_above("se"), "se IS NULL OR value IS NOT NULL"),

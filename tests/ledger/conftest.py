@@ -1,13 +1,11 @@
 """A small campaign on disk, and ways to write to it, to look at it and to break it."""
 
 import csv
-import hashlib
 import io
 import json
-import sqlite3
-from contextlib import closing
 from dataclasses import dataclass
 from pathlib import Path
+from typing import Any
 
 import pytest
 
@@ -41,15 +39,21 @@ def row(day: int = 1, **changes: object) -> dict[str, object]:
 class Bench:
     """A campaign's database and the few things a person does with it."""
 
-    path: Path
+    store: Any
+    folder: Path
 
     @property
-    def folder(self) -> Path:
-        return self.path.parent
+    def where(self) -> str:
+        return self.store.where
+
+    @property
+    def path(self) -> Path:
+        assert self.store.kind == "sqlite"
+        return Path(self.where)
 
     @property
     def database(self) -> Database:
-        return open_database(str(self.path))
+        return open_database(self.where)
 
     def write(self, rows, name="table.csv") -> str:
         stream = io.StringIO()
@@ -121,29 +125,29 @@ class Bench:
         with self.database.reading() as connection:
             return [p for p in check(connection, None, self.folder) if not p.grave]
 
-    def ask(self, statement, *values):
-        with closing(sqlite3.connect(self.path)) as connection:
-            return connection.execute(statement, values).fetchall()
+    def ask(self, statement):
+        return self.store.ask(statement)
 
     def digest(self) -> str:
-        """Digest of the whole database, every table and row."""
-        with closing(sqlite3.connect(self.path)) as connection:
-            return hashlib.sha256("\n".join(connection.iterdump()).encode()).hexdigest()
+        return self.store.digest()
 
     def tamper(self, *statements) -> None:
-        """Do what a hand with a SQL shell could: drop every trigger, then anything."""
-        with closing(sqlite3.connect(self.path, isolation_level=None)) as connection:
-            names = "SELECT name FROM sqlite_master WHERE type = 'trigger'"
-            for (name,) in connection.execute(names).fetchall():
-                connection.execute(f"DROP TRIGGER {name}")
-            for statement in statements:
-                assert connection.execute(statement).rowcount != 0, statement
+        self.store.tamper(*statements)
 
 
 @pytest.fixture
-def bench(tmp_path):
+def bench(empty_store, tmp_path, monkeypatch):
+    """A new campaign in each kind of store; relative paths start in its folder."""
+    monkeypatch.chdir(tmp_path)
+    start(empty_store.where, "UTC", "tester")
+    return Bench(empty_store, tmp_path)
+
+
+@pytest.fixture
+def bench_file(tmp_path, store_of):
+    """A new campaign in a SQLite file."""
     start(str(tmp_path / "campaign.sqlite"), "UTC", "tester")
-    return Bench(tmp_path / "campaign.sqlite")
+    return Bench(store_of(tmp_path / "campaign.sqlite"), tmp_path)
 
 
 @pytest.fixture

@@ -44,54 +44,54 @@ def test_another_database_holds_no_campaign(tmp_path):
 
 
 @pytest.mark.parametrize(("revision", "word"), [("9999", "newer"), ("0000", "older")])
-def test_another_revision_is_named(bench, revision, word):
-    with closing(sqlite3.connect(bench.path)) as connection:
+def test_another_revision_is_named(bench_file, revision, word):
+    with closing(sqlite3.connect(bench_file.path)) as connection:
         connection.execute("UPDATE schema_revision SET version_num = ?", (revision,))
         connection.commit()
-    message = refusal(open_database, str(bench.path))
+    message = refusal(open_database, str(bench_file.path))
     assert word in message and revision in message
 
 
-def test_a_damaged_file_is_said_to_be_damaged(bench, make_row):
-    bench.enter(*(make_row(day) for day in range(1, 28)))
-    with closing(sqlite3.connect(bench.path)) as connection:
+def test_a_damaged_file_is_said_to_be_damaged(bench_file, make_row):
+    bench_file.enter(*(make_row(day) for day in range(1, 28)))
+    with closing(sqlite3.connect(bench_file.path)) as connection:
         connection.execute("PRAGMA wal_checkpoint(TRUNCATE)")
-    content = bytearray(bench.path.read_bytes())
+    content = bytearray(bench_file.path.read_bytes())
     content[8192:] = b"\x5a" * (len(content) - 8192)
-    bench.path.write_bytes(content)
+    bench_file.path.write_bytes(content)
     with pytest.raises(Refused, match="damaged|not a campaign|refuses"):
-        bench.measurements()
+        bench_file.measurements()
 
 
-def test_a_read_only_database_is_said_to_be_so(bench, make_row, monkeypatch):
+def test_a_read_only_database_is_said_to_be_so(bench_file, make_row, monkeypatch):
     """Opened read-only by SQLite itself: file modes do not bind a superuser."""
     real = sqlite3.connect
 
     def read_only(name, **options):
         return real(name.replace("mode=rw", "mode=ro"), **options)
 
-    bench.enter(make_row(1))
+    bench_file.enter(make_row(1))
     monkeypatch.setattr(sqlite3, "connect", read_only)
-    assert len(bench.measurements()) == 1
+    assert len(bench_file.measurements()) == 1
     with pytest.raises(Refused, match="read-only here; write access"):
-        bench.enter(make_row(2))
+        bench_file.enter(make_row(2))
 
 
-def test_a_locked_database_is_said_to_be_locked(bench, make_row, monkeypatch):
+def test_a_locked_database_is_said_to_be_locked(bench_file, make_row, monkeypatch):
     monkeypatch.setattr("campaign.ledger.database.WAIT_S", 0.05)
-    with closing(sqlite3.connect(bench.path, isolation_level=None)) as other:
+    with closing(sqlite3.connect(bench_file.path, isolation_level=None)) as other:
         other.execute("BEGIN IMMEDIATE")
         with pytest.raises(Refused, match="locked"):
-            bench.enter(make_row(1))
-        assert bench.measurements() == []  # readers are not held up
+            bench_file.enter(make_row(1))
+        assert bench_file.measurements() == []  # readers are not held up
         other.execute("ROLLBACK")
-    assert bench.enter(make_row(1)).measurements == 1
+    assert bench_file.enter(make_row(1)).measurements == 1
 
 
-def test_starting_leaves_alone_what_is_there(bench, tmp_path):
-    before = bench.digest()
-    assert "left as it is" in refusal(start, str(bench.path))
-    assert bench.digest() == before
+def test_starting_leaves_alone_what_is_there(bench_file, tmp_path):
+    before = bench_file.digest()
+    assert "left as it is" in refusal(start, str(bench_file.path))
+    assert bench_file.digest() == before
     assert "is a folder" in refusal(start, str(tmp_path))
     assert "does not exist" in refusal(start, str(tmp_path / "no" / "x"))
     assert "no campaign can be kept" in refusal(start, str(tmp_path / ("x" * 300)))

@@ -2,8 +2,6 @@
 
 import hashlib
 import json
-import sqlite3
-from contextlib import closing
 
 import pytest
 
@@ -142,16 +140,14 @@ def test_a_journal_rewritten_with_fitting_hashes_is_found_by_the_head(kept):
     noted = kept.head()["hash"]
     kept.tamper("UPDATE journal SET who = 'somebody else' WHERE id = 2")
     names = ["previous", "id", "at", "who", "action", "subject", "before", "after", "reason"]
-    with closing(sqlite3.connect(kept.path, isolation_level=None)) as connection:
+    with kept.store.connected(rules=False) as connection:
         previous = "0" * 64
-        rows = connection.execute(f"SELECT {', '.join(names)} FROM journal ORDER BY id").fetchall()
-        for texts in rows:
-            fields = [previous, *texts[1:]]
-            text = json.dumps(fields, ensure_ascii=False, separators=(",", ":"))
+        query = f"SELECT {', '.join(names)} FROM journal ORDER BY id"
+        for texts in connection.exec_driver_sql(query).fetchall():
+            text = json.dumps([previous, *texts[1:]], ensure_ascii=False, separators=(",", ":"))
             new = hashlib.sha256(text.encode()).hexdigest()
-            connection.execute(
-                "UPDATE journal SET previous = ?, hash = ? WHERE id = ?",
-                (previous, new, texts[1]),
+            connection.exec_driver_sql(
+                f"UPDATE journal SET previous = '{previous}', hash = '{new}' WHERE id = {texts[1]}"
             )
             previous = new
     assert kept.problems() == []

@@ -1,10 +1,11 @@
 """Every rule the database keeps by itself, tried with raw SQL as a hand at a shell would.
 
-The rules are the contract's (what is recorded, and what must hold); the program's own code
+Each rule is tried in SQLite and, where a server is named, in PostgreSQL. The rules are the contract's (what is recorded, and what must hold); the program's own code
 is used only to build a sound campaign first.
 """
 
 import itertools
+import re
 import sqlite3
 
 import pytest
@@ -15,13 +16,56 @@ COUNTER = itertools.count()
 NOW = "2026-03-01T08:00:00.000000Z"
 
 
+class Shell:
+    """A raw connection of either driver: statements with ? marks, each committed by itself."""
+
+    def __init__(self, store):
+        self.kind = store.kind
+        if self.kind == "sqlite":
+            self.raw = sqlite3.connect(store.where, isolation_level=None)
+            self.raw.execute("PRAGMA foreign_keys = ON")
+            self.error = sqlite3.Error
+        else:
+            import psycopg
+
+            self.raw = psycopg.connect(store.where.replace("+psycopg", ""), autocommit=True)
+            self.error = psycopg.Error
+
+    def execute(self, statement, values=()):
+        if self.kind == "sqlite":
+            return self.raw.execute(statement, values)
+        marked = statement.replace("%", "%%").replace("?", "%s")
+        return self.raw.execute(marked, list(values) or None)
+
+    @property
+    def in_transaction(self):
+        if self.kind == "sqlite":
+            return self.raw.in_transaction
+        return self.raw.info.transaction_status.name != "IDLE"
+
+    def columns(self, table):
+        return [d[0] for d in self.execute(f"SELECT * FROM {table}").description]
+
+
+# What each store says of one and the same rule.
+SAID = {
+    "only one row in force": "unique constraint",
+    "cannot store TEXT": "invalid input syntax",
+}
+
+
+def pattern(connection, match):
+    """What the refusal must say, in the words of the store."""
+    if match is not None and connection.kind == "postgresql":
+        match = SAID.get(match, match)
+    return None if match is None else re.compile(match, re.IGNORECASE)
+
+
 @pytest.fixture
-def ledger(tmp_path):
-    """A campaign with one of everything, opened as a SQL shell would (no pragmas)."""
-    path = tmp_path / "campaign.sqlite"
-    start(str(path))
-    connection = sqlite3.connect(path, isolation_level=None)
-    connection.execute("PRAGMA foreign_keys = ON")
+def ledger(empty_store):
+    """A campaign with one of everything, opened as a SQL shell would."""
+    start(empty_store.where)
+    connection = Shell(empty_store)
     entry(connection)
     # Components wait for their electrolyte until the end of the transaction.
     connection.execute("BEGIN")
@@ -36,7 +80,16 @@ def ledger(tmp_path):
     insert(connection, "fitted_value", VALUE)
     connection.execute("COMMIT")
     yield connection
-    connection.close()
+    connection.raw.close()
+
+
+@pytest.fixture
+def ledger_file(tmp_path, store_of):
+    """An empty campaign in a SQLite file, opened as a SQL shell would."""
+    start(str(tmp_path / "campaign.sqlite"))
+    connection = Shell(store_of(tmp_path / "campaign.sqlite"))
+    yield connection
+    connection.raw.close()
 
 
 ELECTROLYTE = {
@@ -90,7 +143,7 @@ def component(connection, position, role, species, amount, basis, electrolyte=1)
 
 
 def refused(connection, statement, values=(), match=None):
-    with pytest.raises(sqlite3.Error, match=match):
+    with pytest.raises(connection.error, match=pattern(connection, match)):
         connection.execute(statement, values)
         if connection.in_transaction:
             connection.execute("COMMIT")
@@ -99,8 +152,22 @@ def refused(connection, statement, values=(), match=None):
 
 
 def refuses(connection, table, row, match=None, verb="INSERT"):
-    with pytest.raises(sqlite3.Error, match=match):
+    with pytest.raises(connection.error, match=pattern(connection, match)):
         insert(connection, table, row, verb)
+
+
+def upserts(connection, table, row, action):
+    """What PostgreSQL has in place of INSERT OR REPLACE: refused, or without effect."""
+    key = {"fitted_value": "fit, quantity"}.get(table, "id")
+    row = {"entry": latest(connection), **row}
+    names = ", ".join(f'"{name}"' for name in row)
+    marks = ", ".join("?" for _ in row)
+    sets = " SET " + ", ".join(f'"{n}" = excluded."{n}"' for n in row)
+    statement = f'INSERT INTO "{table}" ({names}) VALUES ({marks}) ON CONFLICT ({key}) '
+    try:
+        connection.execute(statement + action + (sets if "UPDATE" in action else ""), row.values())
+    except connection.error:
+        return
 
 
 def second(base, **changes):
@@ -115,7 +182,6 @@ TABLES = (
 
 def test_a_sound_campaign_passes_its_own_rules(ledger):
     assert ledger.execute("SELECT count(*) FROM fitted_value").fetchone() == (1,)
-    assert ledger.execute("PRAGMA foreign_key_check").fetchall() == []
 
 
 @pytest.mark.parametrize("table", TABLES)
@@ -126,7 +192,7 @@ def test_nothing_is_deleted(ledger, table):
 
 @pytest.mark.parametrize("table", TABLES)
 def test_every_column_refuses_an_update(ledger, table):
-    columns = [row[1] for row in ledger.execute(f"PRAGMA table_info({table})")]
+    columns = ledger.columns(table)
     assert len(columns) > 1
     for column in columns:
         if column != "ended_by":
@@ -141,7 +207,8 @@ def tables(connection):
     ]
 
 
-def test_every_table_is_strict_and_numbers_are_real(ledger):
+def test_every_table_is_strict_and_numbers_are_real(ledger_file):
+    ledger = ledger_file
     listed = {row[1]: row[5] for row in ledger.execute("PRAGMA table_list") if row[2] == "table"}
     for table in tables(ledger):
         assert listed[table] == 1, table
@@ -259,7 +326,8 @@ def test_a_second_current_fit_is_refused(ledger):
 
 
 def test_a_second_current_fit_is_refused_by_the_index_alone(ledger):
-    ledger.execute("DROP TRIGGER fit_made")
+    on = " ON fit" if ledger.kind == "postgresql" else ""
+    ledger.execute(f"DROP TRIGGER fit_made{on}")
     refuses(ledger, "fit", second(FIT), "UNIQUE")
 
 
@@ -298,7 +366,10 @@ def test_labels_and_places_are_unique_in_force(ledger, table, row):
 @pytest.mark.parametrize("verb", ["INSERT OR REPLACE", "REPLACE"])
 def test_replace_does_not_get_round_the_rules(ledger, table, row, verb):
     before = ledger.execute(f"SELECT * FROM {table}").fetchall()
-    refuses(ledger, table, row, verb=verb)
+    if ledger.kind == "sqlite":
+        refuses(ledger, table, row, verb=verb)
+    else:
+        upserts(ledger, table, row, "DO NOTHING" if verb == "REPLACE" else "DO UPDATE")
     assert ledger.execute(f"SELECT * FROM {table}").fetchall() == before
 
 
@@ -372,17 +443,17 @@ def test_blend_fractions_sum_to_one(ledger):
 
 @pytest.mark.parametrize("fractions", [(0.5, 0.4), (0.5, 0.6), (1.0, 0.001), ()])
 def test_other_sums_are_refused(ledger, fractions):
-    with pytest.raises(sqlite3.Error, match="sum to 1"):
+    with pytest.raises(ledger.error, match="sum to 1"):
         blend(ledger, *fractions)
 
 
 def test_a_recipe_names_a_salt(ledger):
-    with pytest.raises(sqlite3.Error, match="at least one salt"):
+    with pytest.raises(ledger.error, match="at least one salt"):
         blend(ledger, 1.0, salt=False)
 
 
 def test_a_standing_recipe_takes_no_more_components(ledger):
-    with pytest.raises(sqlite3.Error, match="no more components"):
+    with pytest.raises(ledger.error, match="no more components"):
         component(ledger, 3, "additive", "FEC", 2.0, "wt%")
 
 
@@ -390,7 +461,7 @@ def test_components_do_not_stand_without_their_electrolyte(ledger):
     entry(ledger)
     ledger.execute("BEGIN")
     component(ledger, 0, "salt", "NaPF6", 1.0, "mol/L", electrolyte=9)
-    with pytest.raises(sqlite3.Error, match="FOREIGN KEY"):
+    with pytest.raises(ledger.error, match="(?i)foreign key"):
         ledger.execute("COMMIT")
 
 

@@ -3,6 +3,7 @@
 import pytest
 
 from campaign.errors import Refused
+from campaign.ledger import schema
 
 
 @pytest.fixture
@@ -15,7 +16,7 @@ def rows(bench):
     """Every row of every ledgered table, without the mark that ends it."""
     found = {}
     for table in ("cell", "electrode", "electrolyte", "measurement", "fit", "fitted_value"):
-        names = [r[1] for r in bench.ask(f"PRAGMA table_info({table})") if r[1] != "ended_by"]
+        names = [c.name for c in schema.metadata.tables[table].c if c.name != "ended_by"]
         found[table] = set(bench.ask("SELECT " + ", ".join(f'"{n}"' for n in names) + f" FROM {table}"))
     return found
 

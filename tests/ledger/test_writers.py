@@ -30,7 +30,7 @@ for number in range(logs):
 def test_eight_writers_lose_nothing_and_break_no_chain(bench):
     started = [
         subprocess.Popen(
-            [sys.executable, "-c", SCRIPT, str(bench.path), str(worker), str(LOGS)],
+            [sys.executable, "-c", SCRIPT, bench.where, str(worker), str(LOGS)],
             cwd=ROOT,
             stderr=subprocess.PIPE,
         )
