@@ -36,6 +36,10 @@ def show_next(
     if rows and found.get("budget") is not None:
         print(f"Together {found['hours_together']:g} h of {found['budget']:g} h.\n")
     _cautions(rows)
+    levels = sorted({row["error_probability"] for row in rows if row["chance"] is not None})
+    if levels:
+        shown = " or ".join(f"{1 - one:.4g}" for one in levels)
+        _wrapped(f"Decided means: at a confidence of {shown}, as eliminating a step asks for.")
     costs = "; ".join(f"{name} {hours:g}" for name, hours in found["costs"].items())
     _wrapped(
         f"Bench hours: {costs}. Chance asked for: {found['chance_asked']:g}; seed "
