@@ -22,10 +22,9 @@ from campaign.ledger.starting import start
 
 
 @pytest.fixture
-def stored(tmp_path):
-    path = str(tmp_path / "campaign.sqlite")
-    start(path, "UTC", "tester")
-    return open_database(path)
+def stored(empty_store):
+    start(empty_store.where, "UTC", "tester")
+    return open_database(empty_store.where)
 
 
 def stands(database, as_of=None):
