@@ -49,7 +49,7 @@ def child(job: dict, streams: list) -> int:
 
 
 def run(job: dict) -> dict:
-    streams = [tempfile.TemporaryFile() for _ in range(3)]
+    streams = [tempfile.TemporaryFile() for _ in range(3)]  # noqa: SIM115
     streams[0].write(job["given"].encode("latin-1"))
     streams[0].seek(0)
     number = os.fork()

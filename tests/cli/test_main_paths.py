@@ -91,7 +91,8 @@ def test_a_refit_and_a_restore(bench):
 
 def test_lists_in_three_forms(bench):
     kinds = ("electrodes", "electrolytes", "cells", "measurements", "fits", "imports")
-    runs = bench.all([("list", kind, *form) for kind in kinds for form in ((), ("--json",), ("--csv",))])
+    forms = ((), ("--json",), ("--csv",))
+    runs = bench.all([("list", kind, *form) for kind in kinds for form in forms])
     for place, kind in enumerate(kinds):
         plain, as_json, as_csv = runs[3 * place : 3 * place + 3]
         assert {plain.code, as_json.code, as_csv.code} == {0}

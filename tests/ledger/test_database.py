@@ -59,7 +59,7 @@ def test_a_damaged_file_is_said_to_be_damaged(bench_file, make_row):
     content = bytearray(bench_file.path.read_bytes())
     content[8192:] = b"\x5a" * (len(content) - 8192)
     bench_file.path.write_bytes(content)
-    with pytest.raises(Refused, match="damaged|not a campaign|refuses"):
+    with pytest.raises(Refused, match=r"damaged|not a campaign|refuses"):
         bench_file.measurements()
 
 

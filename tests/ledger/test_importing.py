@@ -156,10 +156,10 @@ def test_a_cell_does_not_change_from_row_to_row(bench, make_row, change, column)
 
 def test_other_spellings_are_no_contradiction(bench, make_row):
     bench.enter(make_row(1, electrolyte="1 M NaPF6 in EC:DMC (1:1 v/v)", ion="Na"))
-    outcome = bench.enter(
-        make_row(2, electrolyte="1.0 mol/L NaPF6 in DMC/EC 1:1 vol", ion="Na+", area_cm2="1.130",
-                 reference="Na+/Na", configuration="Three-electrode")  # fmt: skip
-    )
+    other = make_row(2, electrolyte="1.0 mol/L NaPF6 in DMC/EC 1:1 vol", ion="Na+",
+                     area_cm2="1.130", reference="Na+/Na",
+                     configuration="Three-electrode")  # fmt: skip
+    outcome = bench.enter(other)
     assert (outcome.measurements, outcome.electrolytes) == (1, [])
 
 
@@ -252,7 +252,7 @@ def test_only_a_symmetric_cell_may_leave_its_potential_empty(bench, make_row):
     for configuration in (None, "three-electrode", "two-electrode"):
         faults = bench.faults(make_row(2, cell="B", configuration=configuration, **empty))
         assert columns(faults) == [(2, "potential_V")]
-    assert bench.enter({k: v for k, v in make_row(3, **empty).items()}).measurements == 1
+    assert bench.enter(make_row(3, **empty)).measurements == 1
 
 
 def test_a_measurement_without_any_fitted_value_is_refused(bench, make_row):
@@ -347,7 +347,7 @@ def test_one_file_given_twice_is_refused(bench, make_row):
 
 @pytest.mark.parametrize("name", ["no.csv", ".", "x" * 300, "no/such/table.csv"])
 def test_what_is_no_file_is_refused(bench, name):
-    with pytest.raises(Refused, match="folder|no file"):
+    with pytest.raises(Refused, match=r"folder|no file"):
         bench.enter_files(str(bench.folder / name))
 
 

@@ -17,7 +17,8 @@ def rows(bench):
     found = {}
     for table in ("cell", "electrode", "electrolyte", "measurement", "fit", "fitted_value"):
         names = [c.name for c in schema.metadata.tables[table].c if c.name != "ended_by"]
-        found[table] = set(bench.ask("SELECT " + ", ".join(f'"{n}"' for n in names) + f" FROM {table}"))
+        columns = ", ".join(f'"{name}"' for name in names)
+        found[table] = set(bench.ask(f"SELECT {columns} FROM {table}"))
     return found
 
 
