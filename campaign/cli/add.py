@@ -17,7 +17,8 @@ app = typer.Typer(
 
 
 def _text(option: str, help_text: str, metavar: str = "TEXT") -> typer.models.OptionInfo:
-    return typer.Option(option, metavar=metavar, help=help_text)
+    made: typer.models.OptionInfo = typer.Option(option, metavar=metavar, help=help_text)
+    return made
 
 
 def _done(kind: str, label: str, json: bool, warnings: tuple[str, ...] = ()) -> None:
@@ -52,19 +53,19 @@ def electrode(
     pore_electrolyte: Annotated[
         str | None, _text("--pore-electrolyte", "Electrolyte it was measured in.", "RECIPE")
     ] = None,
-    pore_temperature_C: Annotated[  # noqa: N803 - the unit is part of the name
+    pore_temperature_C: Annotated[
         str | None, _text("--pore-temperature-C", "Temperature it was measured at.", "T")
     ] = None,
-    window_low_V: Annotated[  # noqa: N803
+    window_low_V: Annotated[
         str | None, _text("--window-low-V", "Lowest potential allowed.", "E")
     ] = None,
-    window_high_V: Annotated[  # noqa: N803
+    window_high_V: Annotated[
         str | None, _text("--window-high-V", "Highest potential allowed.", "E")
     ] = None,
     window_reference: Annotated[
         str | None, _text("--window-reference", "Scale of window and plateaus.", "REF")
     ] = None,
-    maximum_temperature_C: Annotated[  # noqa: N803
+    maximum_temperature_C: Annotated[
         str | None, _text("--maximum-temperature-C", "Highest temperature allowed.", "T")
     ] = None,
     plateau: Annotated[
@@ -97,10 +98,10 @@ def electrolyte(
         str | None, _text("--aqueous", "yes or no; else from the solvents.", "YES-NO")
     ] = None,
     density_g_cm3: Annotated[str | None, _text("--density-g-cm3", "Density.", "X")] = None,
-    minimum_temperature_C: Annotated[  # noqa: N803
+    minimum_temperature_C: Annotated[
         str | None, _text("--minimum-temperature-C", "Lowest temperature allowed.", "T")
     ] = None,
-    maximum_temperature_C: Annotated[  # noqa: N803
+    maximum_temperature_C: Annotated[
         str | None, _text("--maximum-temperature-C", "Highest temperature allowed.", "T")
     ] = None,
     conductivity: Annotated[

@@ -273,8 +273,8 @@ class Resolver:
 
     def _ion_of(self, cell: _Gathered) -> Any:
         """Return the insertion ion a single-cation recipe implies."""
-        from campaign.chemistry.ions import parse_ion
         from campaign.chemistry.concentrations import recipe_ions
+        from campaign.chemistry.ions import parse_ion
 
         where = cell.stated["electrolyte"][1]
         recipe = self.book.recipe(where.values["electrolyte"])

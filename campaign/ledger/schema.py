@@ -13,11 +13,11 @@ with it.
 from __future__ import annotations
 
 from sqlalchemy import Column, Double, ForeignKey, Integer, MetaData, Table, Text
-from sqlalchemy.types import REAL
+from sqlalchemy.types import REAL, TypeEngine
 
 metadata = MetaData()
 
-Real = Double().with_variant(REAL(), "sqlite")
+Real: TypeEngine[float] = Double().with_variant(REAL(), "sqlite")
 
 
 def _number(*names: str) -> list[Column[float]]:

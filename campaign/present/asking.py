@@ -11,7 +11,6 @@ import typer
 from campaign.ledger.database import Database
 from campaign.ledger.quantities import QUANTITIES
 
-
 RESISTANCES = ("R_el", "R_sl", "R_ct", "R_lat", "sigma_w")
 
 
