@@ -11,6 +11,7 @@ from collections.abc import Callable, Iterator, Mapping
 from campaign.diagnosis.wording import Decider
 from campaign.ledger.criteria import Criteria
 from campaign.ledger.readings import Snapshot
+from campaign.trends.findings import Axis
 
 
 class LazyEvidence(Mapping[str, Decider]):
@@ -50,8 +51,7 @@ def trend_evidence(
     from campaign.trends.sample import draw, source
 
     whole = draw(snapshot, source(snapshot, criteria, electrode), response)
-    estimators = {axis: axis for axis in evidence.AXES}
+    axes: Mapping[str, Axis] = {axis: axis for axis in evidence.AXES}
     return LazyEvidence(
-        tuple(estimators),
-        lambda axis: evidence._finding(whole, criteria, estimators[axis]),  # type: ignore[index]
+        tuple(axes), lambda axis: evidence._finding(whole, criteria, axes[axis])
     )
