@@ -86,7 +86,7 @@ def new_labels(snapshot: Snapshot, electrodes: Sequence[str]) -> list[str]:
     """Return a label not in use for each new cell, going on from its electrode's labels."""
     r = snapshot.readings
     taken = set(r.cell.tolist()) | set(r.specimen.tolist())
-    found = []
+    found: list[str] = []
     for electrode in electrodes:
         label = _next(taken, set(r.cell[r.electrode == electrode].tolist()) | set(found))
         taken.add(label)

@@ -5,10 +5,10 @@ verdicts; only the ledger is left out. R_ct is the slow term; its order, solvent
 barriers, and the scatter between (5 to 35 %) and within cells (2 to 6 %) differ from campaign to
 campaign. A quarter of the effects is exactly nothing.
 
-Calibration: a campaign left undetermined, its first proposal made for a chance drawn between 0.5
-and 0.93, the results of the proposed cells simulated from the truth, and whether the axis is then
-decided at the error probability the proposal names. The interval of a share is the exact one of
-Clopper & Pearson.
+Calibration: a campaign left undetermined, its first proposal made for a chance drawn from the
+bins that still lack campaigns (which leaves what happens inside a bin alone), the results of the
+proposed cells simulated from the truth, and whether the axis is then decided at the error
+probability the proposal names. The interval of a share is the exact one of Clopper & Pearson.
 
 Hours: each proposal followed until the verdict is settled, against the existing design built
 again, one cell of each kind at all its conditions, until it is.
@@ -211,13 +211,18 @@ def word_of(campaign: Campaign) -> str:
     return settle(snapshot(campaign.rows), CRITERIA, "film", trend_evidence).verdict.word
 
 
-def one_trial(rng: np.random.Generator, nothing: float) -> tuple[str, float, bool] | None:
-    """Return axis, stated chance and whether it was decided; None where not left undetermined."""
+def one_trial(
+    rng: np.random.Generator, nothing: float, asked: tuple[float, float] = (0.5, 0.93)
+) -> tuple[str, float, bool] | None:
+    """Return axis, stated chance and whether it was decided; None where not left undetermined.
+
+    asked: range the chance the proposal is made for is drawn from.
+    """
     campaign = begin(rng, nothing)
     taken = snapshot(campaign.rows)
     if settle(taken, CRITERIA, "film", trend_evidence).verdict.word != "undetermined":
         return None
-    plan = Plan(COSTS, chance=float(rng.uniform(0.5, 0.93)), affordable_h=400.0,
+    plan = Plan(COSTS, chance=float(rng.uniform(*asked)), affordable_h=400.0,
                 seed=int(rng.integers(2**31)), draws=1000)  # fmt: skip
     proposals = of_one(taken, CRITERIA, "film", plan).proposals
     if not proposals or proposals[0].chance is None or proposals[0].axis == LARGEST:
@@ -236,11 +241,13 @@ def calibrate(wanted: int, nothing: float, most: int) -> None:
     while trials < most and min(len(one) for one in found) < wanted:
         rng = np.random.default_rng([SEED, trials, round(100 * nothing)])
         trials += 1
-        result = one_trial(rng, nothing)
+        wanting = [place for place, one in enumerate(found) if len(one) < wanted]
+        short = wanting[trials % len(wanting)]
+        result = one_trial(rng, nothing, (BINS[short] - 0.03, BINS[short + 1]))
         if result is None:
             continue
         place = int(np.searchsorted(BINS, result[1], side="right")) - 1
-        if 0 <= place < len(found):
+        if 0 <= place < len(found) and len(found[place]) < wanted:
             found[place].append(result)
     print(f"\n{nothing:.0%} of the effects are nothing; {trials} campaigns begun, "
           f"{time.process_time() - began:.0f} s")  # fmt: skip
@@ -320,8 +327,9 @@ def main() -> None:
     """Run with the sizes given on the command line."""
     wanted = int(sys.argv[1]) if len(sys.argv) > 1 else 300
     hours = int(sys.argv[2]) if len(sys.argv) > 2 else 200
-    for nothing in (0.0, 0.25):
+    for nothing in (0.25, 0.0):
         calibrate(wanted, nothing, 60 * wanted)
+        sys.stdout.flush()
     if hours:
         compare(hours, 0.25)
 
