@@ -23,6 +23,7 @@ from campaign.cli import (
     listing,
     log,
     next,
+    report,
     show,
     summary,
     template,
@@ -59,12 +60,13 @@ def _campaign(
         os.environ["CAMPAIGN_DB"] = db
 
 
-START, RECORD, CORRECT, ASK, ANSWER, KEEP = (
+START, RECORD, CORRECT, ASK, ANSWER, HAND, KEEP = (
     "Start",
     "Record",
     "Correct",
     "Look up",
     "Read the answer",
+    "Hand over",
     "Keep safe",
 )
 
@@ -90,6 +92,7 @@ app.command("explain", rich_help_panel=ANSWER)(explain.explain)
 app.command("timeline", rich_help_panel=ANSWER)(timeline.timeline)
 app.command("coverage", rich_help_panel=ANSWER)(coverage.coverage)
 app.command("next", rich_help_panel=ANSWER)(next.next_steps)
+app.command("report", rich_help_panel=HAND)(report.report)
 
 
 def main() -> None:
