@@ -345,11 +345,3 @@ def last_measurement(connection: Connection, cell: str | None = None) -> Row | N
     return next((row for row in rows if row["record"] == latest[0]), None)
 
 
-def entry_number(connection: Connection, number: int) -> int:
-    """Return a journal entry's number after checking that it exists."""
-    known = connection.execute(
-        select(schema.journal.c.id).where(schema.journal.c.id == number)
-    ).scalar()
-    if known is None:
-        raise refused(f"the journal has no entry {number}", value=number, expected="an entry number")
-    return number

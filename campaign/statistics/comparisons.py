@@ -12,65 +12,21 @@ A simultaneous interval is estimate +- critical(...) x se:
 [2] Hayter, Ann. Stat. 12 (1984) 61 (Tukey-Kramer is conservative).
 [3] NIST/SEMATECH e-Handbook of Statistical Methods, sec. 7.4.7.1 (Tukey's method).
 [4] Dunnett, J. Am. Stat. Assoc. 50 (1955) 1096; Biometrics 20 (1964) 482.
-[5] Holm, Scand. J. Stat. 6 (1979) 65.
 """
 
 from __future__ import annotations
 
 import math
-from collections.abc import Callable, Sequence
-from dataclasses import dataclass
+from collections.abc import Callable
 from functools import lru_cache
 from itertools import combinations
 from typing import Literal
 
 import numpy as np
 
-from campaign.statistics.estimate import Estimate
-from campaign.statistics.mixed import MixedFit
 from campaign.statistics.sums import Array
 
 Family = Literal["single", "tukey", "dunnett", "bonferroni"]
-
-
-@dataclass(frozen=True)
-class Pair:
-    """The difference of level `a` less level `b` (positions of the levels)."""
-
-    a: int
-    b: int
-    estimate: Estimate
-
-
-def pairwise(fit: MixedFit, n_levels: int, first: int = 0) -> tuple[Pair, ...]:
-    """Return every difference a - b, a < b, of a fit with level coding.
-
-    Columns first .. first + n_levels - 2 of X are the indicators of levels 1 .. n_levels - 1;
-    level 0 is the reference.
-    """
-    pairs = list(combinations(range(n_levels), 2))
-    return tuple(
-        Pair(a, b, fit.contrast(_row(fit, first, a) - _row(fit, first, b))) for a, b in pairs
-    )
-
-
-def against_control(
-    fit: MixedFit, n_levels: int, control: int = 0, first: int = 0
-) -> tuple[tuple[Pair, ...], Array]:
-    """Return the differences of every other level less the control, and their correlation."""
-    others = [level for level in range(n_levels) if level != control]
-    rows = np.array([_row(fit, first, a) - _row(fit, first, control) for a in others])
-    estimates, cov = fit.contrasts(rows)
-    scale = np.sqrt(cov.diagonal())
-    pairs = tuple(Pair(a, control, e) for a, e in zip(others, estimates, strict=True))
-    return pairs, cov / scale[:, None] / scale
-
-
-def _row(fit: MixedFit, first: int, level: int) -> Array:
-    row = np.zeros(fit.beta.size)
-    if level:
-        row[first + level - 1] = 1.0
-    return row
 
 
 def critical(
@@ -103,28 +59,6 @@ def critical(
         key = tuple(round(float(given[i, j]), 5) for i, j in combinations(range(len(given)), 2))
         return _dunnett(alpha, _rounded(df), len(given), key)
     raise ValueError(f"unknown family {family!r}")
-
-
-def holm(p_values: Sequence[float]) -> list[float]:
-    """Return Holm's adjusted p values, in the order given [5]."""
-    n = len(p_values)
-    adjusted = [0.0] * n
-    largest = 0.0
-    for step, at in enumerate(sorted(range(n), key=p_values.__getitem__)):
-        largest = max(largest, min(1.0, (n - step) * p_values[at]))
-        adjusted[at] = largest
-    return adjusted
-
-
-def p_value(estimate: Estimate) -> float:
-    """Return the two-sided p value of estimate = 0, NaN where it has no error."""
-    from scipy.special import stdtr
-
-    if not (math.isfinite(estimate.se) and estimate.df > 0):
-        return math.nan
-    if estimate.se == 0:
-        return 1.0 if estimate.value == 0 else 0.0
-    return float(2 * stdtr(estimate.df, -abs(estimate.value) / estimate.se))
 
 
 def _student(alpha: float, df: float) -> float:
