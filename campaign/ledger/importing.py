@@ -13,6 +13,7 @@ from typing import TYPE_CHECKING, Any
 from campaign.errors import Fault, Refused
 from campaign.ledger import schema
 from campaign.ledger.book import Book
+from campaign.ledger.bulk import stated
 from campaign.ledger.flat.rows import settle_area
 from campaign.ledger.instants import format_utc
 from campaign.ledger.journal import Entry, Pen, writing
@@ -30,8 +31,10 @@ Row = dict[str, Any]
 MEASUREMENT_NUMBERS = (
     "potential_V", "ion_content", "E_half_V", "rest_h", "amplitude_mV", "f_min_Hz", "f_max_Hz",
 )  # fmt: skip
-MEASUREMENT_TEXTS = ("cycle", "direction", "operator", "instrument", "note")
-FIT_TEXTS = ("fitted_by", "circuit", "weighting", "chi2")
+# What a row states itself, in the order of the tables' columns (see `bulk.stated`).
+CONDITIONS = stated(schema.measurement)[5:]
+FIT = stated(schema.fit)[5:]
+IN_ORDER = tuple(sorted(QUANTITIES))
 
 
 @dataclass
@@ -144,6 +147,7 @@ class _Entering:
         self.outcome = outcome
         self.stored: dict[tuple[str, str], Stored] = {}
         self.taken: dict[tuple[str, str], FlatRow] = {}
+        self._places: dict[int, tuple[str, str] | None] = {}
 
     def settle_areas(self, rows: Sequence[FlatRow]) -> list[Fault]:
         """Turn values per area into values as fitted, with the cell's area in the ledger.
@@ -178,10 +182,11 @@ class _Entering:
         labels: dict[str, set[int]] = {}
         instants: set[str] = set()
         for row in rows:
-            label, instant = row.values.get("cell"), row.values.get("measured_at")
-            if label is None or instant is None:
+            place = self._place(row)
+            if place is None:
                 continue
-            instants.add(instant_text(instant))
+            label, instant = place
+            instants.add(instant)
             if label not in labels:
                 labels[label] = set(self.book.former.get(label, ()))
                 if label in self.book.cells:
@@ -213,16 +218,21 @@ class _Entering:
     def enter_rows(self, entry: Entry, rows: Sequence[FlatRow]) -> list[Fault]:
         """Enter rows into an entry; return every fault."""
         resolver = Resolver(self.book, entry, self.outcome)
-        fresh = [row for row in rows if not self._unchanged(row)]
-        faults = resolver.resolve(fresh)
-        faults += resolver.compare([row for row in rows if self._unchanged(row)])
+        unchanged = {id(row) for row in rows if self._unchanged(row)} if self.stored else set()
+        faults = resolver.resolve([row for row in rows if id(row) not in unchanged])
+        faults += resolver.compare([row for row in rows if id(row) in unchanged])
         for row in counted(rows, "rows entered"):
             faults += self._enter_row(entry, row, resolver)
         return faults
 
     def _place(self, row: FlatRow) -> tuple[str, str] | None:
-        label, instant = row.values.get("cell"), row.values.get("measured_at")
-        return None if label is None or instant is None else (label, instant_text(instant))
+        """Return cell and instant of a row; worked out once, rows live as long as this."""
+        key = id(row)
+        if key not in self._places:
+            label, instant = row.values.get("cell"), row.values.get("measured_at")
+            known = label is not None and instant is not None
+            self._places[key] = (label, instant_text(instant)) if known else None
+        return self._places[key]
 
     def _unchanged(self, row: FlatRow) -> bool:
         """Return whether the row's values are stored already and are to stay as they are."""
@@ -270,7 +280,7 @@ class _Entering:
                     "a potential against the cell's reference",
                 )
             ]
-        self._new(entry, row, cell)
+        self._new(entry, row, cell, place[1])
         return []
 
     def _keep(self, row: FlatRow, stored: Stored | None) -> list[Fault]:
@@ -296,44 +306,32 @@ class _Entering:
         self.outcome.refits += 1
         return []
 
-    def _new(self, entry: Entry, row: FlatRow, cell: Row) -> None:
+    def _new(self, entry: Entry, row: FlatRow, cell: Row, instant: str) -> None:
         values = row.values
-        instant = values["measured_at"]
-        made = self.pen.make(
+        number = self.pen.next_id(schema.measurement)
+        offset = values["measured_at"].offset_minutes
+        self.pen.add(
             entry,
             schema.measurement,
-            {
-                "cell": cell["record"],
-                "measured_at": instant_text(instant),
-                "measured_offset": instant.offset_minutes,
-                "temperature_K": values["temperature_K"],
-                **{name: values.get(name) for name in MEASUREMENT_NUMBERS},
-                **{name: values.get(name) for name in MEASUREMENT_TEXTS},
-                "spectrum": values.get("spectrum"),
-                "spectrum_sha256": values.get("spectrum_sha256"),
-            },
+            (number, number, cell["record"], instant, offset, *map(values.get, CONDITIONS)),
         )
-        self._make_fit(entry, row, made["record"])
+        self._make_fit(entry, row, number)
         self.outcome.measurements += 1
 
     def _make_fit(self, entry: Entry, row: FlatRow, measurement: int) -> None:
-        fitted_at = row.values.get("fitted_at")
-        made = self.pen.make(
-            entry,
-            schema.fit,
-            {
-                "measurement": measurement,
-                "fitted_at": instant_text(fitted_at) if fitted_at else None,
-                "fitted_offset": fitted_at.offset_minutes if fitted_at else None,
-                **{name: row.values.get(name) for name in FIT_TEXTS},
-            },
+        values, add = row.values, self.pen.add
+        number = self.pen.next_id(schema.fit)
+        fitted_at = values.get("fitted_at")
+        when = (
+            (None, None)
+            if fitted_at is None
+            else (instant_text(fitted_at), fitted_at.offset_minutes)
         )
-        for quantity, (value, se) in fitted(row).items():
-            self.pen.make(
-                entry,
-                schema.fitted_value,
-                {"fit": made["id"], "quantity": quantity, "value": value, "se": se},
-            )
+        add(entry, schema.fit, (number, number, measurement, *when, *map(values.get, FIT)))
+        for quantity in IN_ORDER:
+            item = values.get(quantity)
+            if item is not None:
+                add(entry, schema.fitted_value, (number, quantity, item[0], item[1]))
 
 
 def _stated_areas(rows: Iterable[FlatRow]) -> dict[str, float]:

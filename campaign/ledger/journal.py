@@ -17,10 +17,12 @@ from collections.abc import Iterable, Iterator, Mapping, Sequence
 from contextlib import contextmanager
 from dataclasses import dataclass, field
 from datetime import UTC, datetime
+from itertools import chain, islice
 from typing import TYPE_CHECKING, Any
 
 from campaign.errors import Refused
 from campaign.ledger import schema
+from campaign.ledger.bulk import Cells, insert, key_of, lines, stated
 from campaign.ledger.fields import clean_text
 
 if TYPE_CHECKING:
@@ -41,12 +43,12 @@ def canonical(content: object) -> str:
     return _encode(content)
 
 
-def digest(lines: Iterable[str]) -> str:
+def digest(texts: Iterable[str]) -> str:
     """Return the SHA-256 of text lines, each ended by a line feed (UTF-8)."""
     state = hashlib.sha256()
-    for line in lines:
-        state.update(line.encode())
-        state.update(b"\n")
+    rest = iter(texts)
+    while block := list(islice(rest, 5000)):
+        state.update(("\n".join(block) + "\n").encode())
     return state.hexdigest()
 
 
@@ -100,6 +102,7 @@ class Entry:
     before: Row = field(default_factory=dict)
     after: Row = field(default_factory=dict)
     made: dict[str, list[Row]] = field(default_factory=dict)
+    many: dict[str, list[Cells]] = field(default_factory=dict)
     ended: dict[str, list[tuple[Any, ...]]] = field(default_factory=dict)
     always: bool = False  # written even though it makes and ends no row
 
@@ -109,7 +112,7 @@ class Entry:
         self.ended.setdefault(table.name, []).append(key)
 
     def __bool__(self) -> bool:
-        return self.always or bool(self.made or self.ended)
+        return self.always or bool(self.made or self.many or self.ended)
 
 
 @dataclass
@@ -152,6 +155,16 @@ class Pen:
         entry.made.setdefault(table.name, []).append(made)
         return made
 
+    def add(self, entry: Entry, table: Table, cells: Cells) -> None:
+        """Add a row that is numbered already: its cells in the order of `bulk.stated`.
+
+        For tables of measurements, which make very many rows.
+        """
+        rows = entry.many.get(table.name)
+        if rows is None:
+            rows = entry.many[table.name] = []
+        rows.append(cells)
+
 
 @contextmanager
 def writing(
@@ -187,7 +200,7 @@ def read_head(connection: Connection) -> tuple[int, str] | None:
 def _write(connection: Connection, entry: Entry, who: str, reason: str | None) -> None:
     head = read_head(connection)
     number = head[0] + 1 if head else 1
-    _complete(entry, number)
+    made = _complete(entry, number)
     record = {
         "id": number,
         "at": now(),
@@ -195,7 +208,7 @@ def _write(connection: Connection, entry: Entry, who: str, reason: str | None) -
         "action": entry.action,
         "subject": entry.subject,
         "before": canonical({**entry.before, **ended_summary(entry.ended)}),
-        "after": canonical({**entry.after, **made_summary(entry.made)}),
+        "after": canonical({**entry.after, **made_summary(made)}),
         "reason": reason,
         "previous": head[1] if head else FIRST,
     }
@@ -204,33 +217,22 @@ def _write(connection: Connection, entry: Entry, who: str, reason: str | None) -
     for table in reversed(schema.JOURNALLED):
         _end_rows(connection, table, entry.ended.get(table.name, []), number)
     for table in schema.JOURNALLED:
-        rows = entry.made.get(table.name)
+        rows = made.get(table.name)
         if rows:
-            connection.execute(table.insert(), rows)
+            insert(connection, table, rows)
 
 
-def _complete(entry: Entry, number: int) -> None:
-    """Give every row all its columns, in the type the column stores and reads back."""
-    from sqlalchemy import Double
-
+def _complete(entry: Entry, number: int) -> dict[str, list[Cells]]:
+    """Return the rows of an entry, all their columns filled in, sorted by their key."""
+    made: dict[str, list[Cells]] = {}
     for table in schema.JOURNALLED:
-        rows = entry.made.get(table.name)
-        if not rows:
-            continue
-        names = [c.name for c in table.c if c.name not in ("ended_by", "entry")]
-        real = {c.name for c in table.c if isinstance(c.type, Double)}
-        entry.made[table.name] = [
-            {
-                **{
-                    name: float(row[name])
-                    if name in real and row.get(name) is not None
-                    else row.get(name)
-                    for name in names
-                },
-                "entry": number,
-            }
-            for row in rows
-        ]
+        names = stated(table)
+        rows = [tuple(map(row.get, names)) for row in entry.made.get(table.name, ())]
+        rows += entry.many.get(table.name, ())
+        if rows:
+            rows.sort(key=key_of(table))
+            made[table.name] = [(*row, number) for row in rows]
+    return made
 
 
 def _end_rows(
@@ -250,17 +252,18 @@ def _end_rows(
     )
 
 
-def made_summary(made: Mapping[str, Sequence[Row]]) -> Row:
-    """Return the counts and the digest of the rows an entry made ({} when none)."""
-    if not any(made.values()):
+def made_summary(made: Mapping[str, Sequence[Cells]]) -> Row:
+    """Return the counts and the digest of the rows an entry made ({} when none).
+
+    made: by table, rows sorted by their key, complete with their entry.
+    """
+    if not made:
         return {}
-    lines = [
-        made_line(table.name, row)
-        for table in schema.JOURNALLED
-        for row in sorted(made.get(table.name, ()), key=lambda r: _sort_key(table, r))
-    ]
-    counts = {name: len(rows) for name, rows in sorted(made.items()) if rows}
-    return {"made": counts, "made_digest": digest(lines)}
+    texts = chain.from_iterable(
+        lines(table, made[table.name]) for table in schema.JOURNALLED if table.name in made
+    )
+    counts = {name: len(rows) for name, rows in sorted(made.items())}
+    return {"made": counts, "made_digest": digest(texts)}
 
 
 def ended_summary(ended: Mapping[str, Sequence[tuple[Any, ...]]]) -> Row:
@@ -274,7 +277,3 @@ def ended_summary(ended: Mapping[str, Sequence[tuple[Any, ...]]]) -> Row:
     ]
     counts = {name: len(rows) for name, rows in sorted(ended.items()) if rows}
     return {"ended": counts, "ended_digest": digest(lines)}
-
-
-def _sort_key(table: Table, row: Mapping[str, Any]) -> tuple[Any, ...]:
-    return tuple(row[name] for name in keys(table))

@@ -1,0 +1,109 @@
+"""Many rows at once: their canonical text by columns, and their insertion in large statements.
+
+A row is a tuple here, in the order of `stated(table)` and then `entry`. The text of a row is
+the one `journal.made_line` gives; it is put together column by column, because a table of
+measurements makes a million rows at a time.
+"""
+
+from __future__ import annotations
+
+import json
+from collections.abc import Callable, Iterator, Sequence
+from functools import lru_cache
+from itertools import chain
+from operator import itemgetter
+from typing import TYPE_CHECKING, Any
+
+if TYPE_CHECKING:
+    from sqlalchemy import Connection, Table
+
+Cells = tuple[Any, ...]
+
+BLOCK = 5000  # rows whose text is put together at once
+# A statement that may be refused by a trigger keeps what it would have to undo; one for many
+# rows does that once. 500 rows of the widest table stay below SQLite's limit on parameters.
+ROWS_A_STATEMENT = 500
+
+_text = json.JSONEncoder(ensure_ascii=False).encode
+
+
+@lru_cache(maxsize=64)
+def stated(table: Table) -> tuple[str, ...]:
+    """Return the columns a new row fills, in the table's order, without `entry`."""
+    return tuple(column.name for column in table.c if column.name not in ("entry", "ended_by"))
+
+
+@lru_cache(maxsize=64)
+def key_of(table: Table) -> Callable[[Cells], Any]:
+    """Return what sorts the rows of a table by its primary key."""
+    names = stated(table)
+    return itemgetter(*(names.index(column.name) for column in table.primary_key.columns))
+
+
+@lru_cache(maxsize=64)
+def _writers(table: Table) -> tuple[Callable[[Any], str], ...]:
+    """Return what writes a filled cell of each column as canonical text."""
+    from sqlalchemy import Double, Integer
+
+    def real(number: float) -> str:
+        return float.__repr__(float(number))
+
+    def writer(kind: object) -> Callable[[Any], str]:
+        if isinstance(kind, Double):
+            return real
+        return int.__repr__ if isinstance(kind, Integer) else _text
+
+    return tuple(writer(table.c[name].type) for name in (*stated(table), "entry"))
+
+
+def lines(table: Table, rows: Sequence[Cells]) -> Iterator[str]:
+    """Yield the canonical texts of rows, in their order."""
+    for start in range(0, len(rows), BLOCK):
+        yield from _block(table, rows[start : start + BLOCK])
+
+
+def _block(table: Table, rows: Sequence[Cells]) -> Iterator[str]:
+    names = (*stated(table), "entry")
+    columns = dict(zip(names, zip(*rows, strict=True), strict=True))
+    writers = dict(zip(names, _writers(table), strict=True))
+    pieces = [f"[{_text(table.name)},{{"]
+    parts: list[list[str]] = []
+    begun = False  # a column that every row fills has been written: commas come before
+    for name in sorted(names):
+        column, write = columns[name], writers[name]
+        label = f"{_text(name)}:"
+        empty = column.count(None)
+        if empty == len(column):
+            continue
+        if empty == 0:
+            pieces[-1] += ("," if begun else "") + label
+            after = "" if begun or name == "entry" else ","
+            begun = begun or name == "entry"
+            parts.append([write(cell) for cell in column])
+            pieces.append(after)
+            continue
+        before, after = ("," + label, "") if begun else (label, ",")
+        parts.append(["" if cell is None else before + write(cell) + after for cell in column])
+        pieces.append("")
+    pieces[-1] += "}]"
+    template = "%s".join(piece.replace("%", "%%") for piece in pieces)
+    return map(template.__mod__, zip(*parts, strict=True))
+
+
+def insert(connection: Connection, table: Table, rows: Sequence[Cells]) -> None:
+    """Insert rows; what a rule refuses is raised as the database reports it."""
+    names = (*stated(table), "entry")
+    if connection.dialect.name != "sqlite":
+        connection.execute(table.insert(), [dict(zip(names, row, strict=True)) for row in rows])
+        return
+    columns = ",".join(f'"{name}"' for name in names)
+    one = f"({','.join('?' * len(names))})"
+    begin = f'INSERT INTO "{table.name}" ({columns}) VALUES '
+    whole = len(rows) - len(rows) % ROWS_A_STATEMENT
+    if whole:
+        many = begin + ",".join([one] * ROWS_A_STATEMENT)
+        for start in range(0, whole, ROWS_A_STATEMENT):
+            block = rows[start : start + ROWS_A_STATEMENT]
+            connection.exec_driver_sql(many, tuple(chain.from_iterable(block)))
+    if whole < len(rows):
+        connection.exec_driver_sql(begin + one, list(rows[whole:]))
