@@ -41,4 +41,4 @@ def criteria(connection: Connection, as_of: int | None = None) -> Criteria:
     rows = connection.execute(
         select(table.c.name, table.c.value).where(in_force(table, as_of))
     ).all()
-    return replace(Criteria(), **{name: value for name, value in rows})
+    return replace(Criteria(), **dict(rows))

@@ -148,7 +148,8 @@ def _of_fit(connection: Connection, row: Row) -> Row:
     shown: Row = {}
     for name, amount, se, unit in rows:
         error = "" if se is None else f" ± {se:.3g}"
-        shown[name] = "absent" if amount is None else f"{amount:.8g}{error} {unit}".removesuffix(" 1")
+        written = "absent" if amount is None else f"{amount:.8g}{error} {unit}"
+        shown[name] = written.removesuffix(" 1")
     return shown
 
 

@@ -154,7 +154,8 @@ def show_changes(rows: Sequence[Row]) -> None:
     """Print what each amendment changed, below the journal."""
     for row in rows:
         was, now = row["before"].get("was", {}), row["after"].get("is", {})
-        show_amended(f"entry {row['entry']}", {field: (was.get(field), now[field]) for field in now})
+        changed = {field: (was.get(field), now[field]) for field in now}
+        show_amended(f"entry {row['entry']}", changed)
 
 
 def show_amended(what: str, changed: Mapping[str, tuple[Any, Any]]) -> None:

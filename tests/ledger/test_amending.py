@@ -129,6 +129,7 @@ def test_a_renamed_cell_answers_to_its_new_name_only(kept, make_row):
 
 def test_an_amended_electrolyte_keeps_its_components(kept):
     kept.amend("electrolyte", "1 M NaPF6 in PC", density_g_cm3="1.28")
-    counts = kept.ask("SELECT electrolyte, count(*) FROM electrolyte_component GROUP BY 1 ORDER BY 1")
+    counted = "SELECT electrolyte, count(*) FROM electrolyte_component GROUP BY 1 ORDER BY 1"
+    counts = kept.ask(counted)
     assert counts == [(1, 2), (2, 2)]
     assert kept.cells()[0]["electrolyte"] == "1 mol/L NaPF6 in PC"

@@ -1,7 +1,8 @@
 """Every rule the database keeps by itself, tried with raw SQL as a hand at a shell would.
 
-Each rule is tried in SQLite and, where a server is named, in PostgreSQL. The rules are the contract's (what is recorded, and what must hold); the program's own code
-is used only to build a sound campaign first.
+Each rule is tried in SQLite and, where a server is named, in PostgreSQL. The rules are the
+contract's (what is recorded, and what must hold); the program's own code is used only to build a
+sound campaign first.
 """
 
 import itertools
@@ -461,7 +462,7 @@ def test_components_do_not_stand_without_their_electrolyte(ledger):
     entry(ledger)
     ledger.execute("BEGIN")
     component(ledger, 0, "salt", "NaPF6", 1.0, "mol/L", electrolyte=9)
-    with pytest.raises(ledger.error, match="(?i)foreign key"):
+    with pytest.raises(ledger.error, match=r"(?i)foreign key"):
         ledger.execute("COMMIT")
 
 
