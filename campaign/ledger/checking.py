@@ -1,26 +1,26 @@
-"""Checking a campaign: the journal's chain, every row's digest, spectra, plausibility.
+"""Checking a campaign: the journal's chain, every row's digest, rules, spectra, plausibility.
 
 Each problem comes with its remedy. Problems fail the check; remarks do not.
 """
 
 from __future__ import annotations
 
-import hashlib
 import json
-from collections.abc import Iterator, Mapping
+from collections.abc import Iterable, Iterator
 from dataclasses import dataclass
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
 from sqlalchemy import and_, func, select
 
-from campaign.ledger import schema
+from campaign.ledger import invariants, rules, schema
 from campaign.ledger.database import is_file
 from campaign.ledger.journal import FIRST, digest, ended_line, entry_hash, keys, made_line
 from campaign.ledger.settings import in_force
+from campaign.ledger.spectra import file_digest, lies_below
 
 if TYPE_CHECKING:
-    from sqlalchemy import Connection, Table
+    from sqlalchemy import Connection
 
 Row = dict[str, Any]
 
@@ -29,12 +29,22 @@ RESTORE = "restore the latest backup whose journal head is in this chain"
 
 @dataclass(frozen=True)
 class Problem:
-    """One thing the check found: what, and how to mend it; `grave` fails the check."""
+    """One thing the check found: what, and how to mend it; `grave` fails the check.
+
+    kind: what it is a problem of. Of journal, rows or storage: what is stored is not what was
+    entered, and a copy of it would not be either.
+    """
 
     about: str
     message: str
     remedy: str
     grave: bool = True
+    kind: str = "journal"
+
+
+def damage(problems: Iterable[Problem]) -> list[Problem]:
+    """Return the problems that show that what is stored is not what was entered."""
+    return [p for p in problems if p.grave and p.kind in ("journal", "rows", "storage")]
 
 
 def check(
@@ -51,6 +61,7 @@ def check(
         *_head(entries, head),
         *_digests(connection, entries),
         *_storage(connection),
+        *_rules(connection),
         *_orphans(connection),
         *_spectra(connection, folder or Path()),
         *_implausible(connection),
@@ -112,9 +123,11 @@ def _digests(connection: Connection, entries: list[Row]) -> Iterator[Problem]:
                     f"({entry['action']}: {entry['subject']}) no longer agrees with the rows it "
                     f"{what}: rows were changed, added or removed outside the program",
                     RESTORE,
+                    kind="rows",
                 )
     for table, number in strays:
-        yield Problem(table, f"holds a row of an entry {number} the journal lacks", RESTORE)
+        what = f"holds a row of an entry {number} the journal lacks"
+        yield Problem(table, what, RESTORE, kind="rows")
 
 
 def _lines(
@@ -141,9 +154,26 @@ def _storage(connection: Connection) -> Iterator[Problem]:
         return
     found = connection.exec_driver_sql("PRAGMA integrity_check(5)").scalars().all()
     if found != ["ok"]:
-        yield Problem("database file", "; ".join(map(str, found)), RESTORE)
+        yield Problem("database file", "; ".join(map(str, found)), RESTORE, kind="storage")
     for row in connection.exec_driver_sql("PRAGMA foreign_key_check").fetchmany(5):
-        yield Problem(str(row[0]), f"row {row[1]} refers to a missing row of {row[2]}", RESTORE)
+        what = f"row {row[1]} refers to a missing row of {row[2]}"
+        yield Problem(str(row[0]), what, RESTORE, kind="storage")
+
+
+def _rules(connection: Connection) -> Iterator[Problem]:
+    for name in rules.missing(connection):
+        yield Problem(
+            "database",
+            f"its own rule {name} was taken away or changed",
+            "copy the campaign with 'campaign copy --to NEW.sqlite': the copy has every rule, and "
+            "is refused if a row breaks one",
+            kind="rules",
+        )
+    for about, message in invariants.broken(connection):
+        yield Problem(
+            about, message, f"amend or withdraw it, and {RESTORE} if nobody entered it so",
+            kind="rules",
+        )  # fmt: skip
 
 
 _LINKS = (
@@ -168,6 +198,7 @@ def _orphans(connection: Connection) -> Iterator[Problem]:
                 name,
                 f"{count} in force belong to a {target} that was withdrawn",
                 f"withdraw them too, or enter the {target} again",
+                kind="rules",
             )
 
 
@@ -179,21 +210,36 @@ def _spectra(connection: Connection, folder: Path) -> Iterator[Problem]:
         )
     )
     for record, name, known in rows:
-        path = folder / name
-        about = f"measurement {record}"
-        if not is_file(path):
-            yield Problem(
-                about,
-                f"its spectrum file {name} is not there",
-                "put the file back, or amend the measurement's spectrum",
-                grave=known is not None,
-            )
-        elif known is not None and _changed(path, known):
-            yield Problem(
-                about,
-                f"its spectrum file {name} was changed since it was logged, or cannot be read",
-                "put the original file back, or log the new spectrum as a refit",
-            )
+        yield from _spectrum(f"measurement {record}", folder, name, known)
+
+
+def _spectrum(about: str, folder: Path, name: str, known: str | None) -> Iterator[Problem]:
+    path = folder / name
+    # An absolute name with a digest was read when it was entered, below its table's folder.
+    entered = known is not None and Path(name).is_absolute()
+    if not (entered or lies_below(path, folder)):
+        yield Problem(
+            about,
+            f"its spectrum file {name} lies outside the campaign's folder and is not read",
+            "keep spectra below the folder of the database, and name them from there",
+            grave=False,
+            kind="spectrum",
+        )
+    elif not is_file(path):
+        yield Problem(
+            about,
+            f"its spectrum file {name} is not there",
+            "put the file back, or amend the measurement's spectrum",
+            grave=known is not None,
+            kind="spectrum",
+        )
+    elif known is not None and _changed(path, known):
+        yield Problem(
+            about,
+            f"its spectrum file {name} was changed since it was logged, or cannot be read",
+            "put the original file back, or log the new spectrum as a refit",
+            kind="spectrum",
+        )
 
 
 def _changed(path: Path, known: str) -> bool:
@@ -201,12 +247,6 @@ def _changed(path: Path, known: str) -> bool:
         return file_digest(path) != known
     except OSError:
         return True  # what cannot be read cannot be vouched for
-
-
-def file_digest(path: Path) -> str:
-    """Return the SHA-256 of a file's bytes."""
-    with path.open("rb") as stream:
-        return hashlib.file_digest(stream, "sha256").hexdigest()
 
 
 # Orders of magnitude outside which a value is more likely a slip of unit than a result
@@ -233,17 +273,44 @@ def _implausible(connection: Connection) -> Iterator[Problem]:
                 f"{quantity} is {amount:g}, which is hardly plausible",
                 "check the unit; amend the fit if it is wrong",
                 grave=False,
+                kind="plausibility",
             )
-    m = schema.measurement
-    cold = connection.execute(
-        select(m.c.record, m.c.temperature_K)
-        .where(in_force(m), (m.c.temperature_K < 150) | (m.c.temperature_K > 700))
-        .limit(20)
-    )
-    for record, kelvin in cold:
-        yield Problem(
-            f"measurement {record}",
-            f"the temperature is {kelvin - 273.15:g} degC, which is hardly plausible",
+    yield from _odd_conditions(connection)
+
+
+def _odd_conditions(connection: Connection) -> Iterator[Problem]:
+    m, value, fit, made = schema.measurement, schema.fitted_value, schema.fit, schema.journal
+    stands = in_force(m)
+    unsure = value.join(fit, and_(fit.c.id == value.c.fit, in_force(fit)))
+    odd = (
+        (
+            select(m.c.record, m.c.temperature_K - 273.15).where(
+                stands, (m.c.temperature_K < 150) | (m.c.temperature_K > 700)
+            ),
+            "the temperature is {:g} degC, which is hardly plausible",
             "check whether kelvin and degrees Celsius were mixed up; amend the measurement",
-            grave=False,
-        )
+        ),
+        (
+            select(m.c.record, m.c.potential_V).where(stands, func.abs(m.c.potential_V) > 10),
+            "the potential is {:g} V, which is hardly plausible",
+            "check whether it is in mV; amend the measurement",
+        ),
+        (
+            select(m.c.record, m.c.measured_at)
+            .select_from(m.join(made, made.c.id == m.c.entry))
+            .where(stands, func.substr(m.c.measured_at, 1, 10) > func.substr(made.c.at, 1, 10)),
+            "it was measured on {:.10}, after it was entered",
+            "check the date and the clocks; withdraw it and enter it with its own instant",
+        ),
+        (
+            select(fit.c.measurement, value.c.se / value.c.value)
+            .select_from(unsure)
+            .where(value.c.se > value.c.value),
+            "a standard error is {:.3g} times its value: the fit does not determine it",
+            "check the fit; amend it, or leave out what the spectrum does not show",
+        ),
+    )
+    for query, message, remedy in odd:
+        for record, amount in connection.execute(query.limit(20)):
+            about = f"measurement {record}"
+            yield Problem(about, message.format(amount), remedy, False, "plausibility")

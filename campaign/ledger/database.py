@@ -41,15 +41,19 @@ POSTGRES_LOCK = 723_190_442
 
 @dataclass(frozen=True)
 class Place:
-    """Where a campaign is kept: a SQLite file, or the URL of a server."""
+    """Where a campaign is kept: a SQLite file, or the URL of a server.
+
+    alias: the name the file will have once it is finished, and is shown under.
+    """
 
     path: Path | None = None
     url: str | None = None
+    alias: Path | None = None
 
     @property
     def shown(self) -> str:
         """The place as it may be printed: never with a password."""
-        return without_password(self.url or str(self.path))
+        return without_password(self.url or str(self.alias or self.path))
 
 
 # What may be shown of the options behind a server's address; any other value may be a secret.

@@ -4,11 +4,12 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from pathlib import Path
-from typing import TYPE_CHECKING, Any
+from typing import TYPE_CHECKING
 
 from campaign.errors import refused
 from campaign.ledger.database import is_file
 from campaign.ledger.settings import zone
+from campaign.ledger.spectra import attach_spectra
 
 if TYPE_CHECKING:
     from campaign.ledger.database import Database
@@ -47,7 +48,7 @@ def read_files(
             raise refused(f"{path} is given twice; give it once", value=path)
         seen.add(path.resolve())
         table = read_table(path, mapping=rules, decimal=decimal, sheet=sheet, zone=campaign_zone)
-        attach_spectra(table.rows, path.resolve().parent, _folder(database))
+        table.warnings += attach_spectra(table.rows, path.resolve().parent, _folder(database))
         tables.append(table)
     return tables
 
@@ -72,40 +73,3 @@ def _refuse_missing(path: Path) -> None:
 def _folder(database: Database) -> Path:
     path = database.where.path
     return path.resolve().parent if path is not None else Path.cwd()
-
-
-def attach_spectra(rows: Sequence[Any], near: Path, home: Path) -> None:
-    """Note the digest of each spectrum file that is there.
-
-    A spectrum is named relative to the table (`near`) or to the database (`home`); it is kept
-    relative to the database where it lies below it.
-    """
-    for row in rows:
-        name = row.values.get("spectrum")
-        if not name:
-            continue
-        for start in (near, home):
-            path = start / name
-            if is_file(path):
-                resolved = path.resolve()
-                row.values["spectrum"] = (
-                    str(resolved.relative_to(home))
-                    if resolved.is_relative_to(home)
-                    else str(resolved)
-                )
-                row.values["spectrum_sha256"] = _digest(resolved)
-                break
-
-
-def _digest(path: Path) -> str:
-    from campaign.ledger.checking import file_digest
-
-    try:
-        return file_digest(path)
-    except OSError as error:
-        raise refused(
-            f"the spectrum file {path} cannot be read: {error.strerror}",
-            column="spectrum",
-            value=path,
-            expected="a readable file",
-        ) from None

@@ -27,8 +27,8 @@ def read_row(
 
     Raises Refused with every fault of the row.
     """
-    from campaign.ledger.files import attach_spectra
     from campaign.ledger.flat.reading import row_from_mapping
+    from campaign.ledger.spectra import attach_spectra
 
     stated: dict[str, object] = dict(given)
     name = "options"

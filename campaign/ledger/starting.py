@@ -3,6 +3,9 @@
 from __future__ import annotations
 
 import errno
+import os
+from collections.abc import Iterator
+from contextlib import contextmanager
 from pathlib import Path
 
 from campaign.errors import refused
@@ -22,14 +25,54 @@ def start(given: str | None, zone: str = "UTC", who: str | None = None) -> Place
     where = place(given)
     if where.path is not None:
         refuse_taken(where.path)
-    fresh = where.path is not None
-    try:
+    if where.path is None:
         _build(where, zone, who)
-    except BaseException:
-        if fresh and where.path is not None:
-            discard(where.path)
-        raise
+        return where
+    with made_whole(where.path) as draft:
+        _build(Place(path=draft, alias=where.path), zone, who)
     return where
+
+
+@contextmanager
+def made_whole(path: Path) -> Iterator[Path]:
+    """Yield a draft beside `path` that takes its name once it is finished, and never before.
+
+    A process that is killed leaves nothing under the name itself; what it leaves beside it is
+    named after it and its number, and may be removed. Raises Refused where somebody else has
+    made the file meanwhile.
+    """
+    draft = path.with_name(f".{path.name}.{os.getpid()}.unfinished"[-250:])
+    discard(draft)
+    try:
+        yield draft
+        _take_name(draft, path)
+    finally:
+        discard(draft)
+
+
+def _take_name(draft: Path, path: Path) -> None:
+    try:
+        os.link(draft, path)  # refuses to replace, which a renaming would not
+    except FileExistsError:
+        refuse_taken(path)
+    except OSError:
+        refuse_taken(path)
+        draft.rename(path)  # a file system without hard links
+    _sync(path.resolve().parent)
+
+
+def _sync(folder: Path) -> None:
+    """Make a new name in a folder survive a power cut, where the system can."""
+    try:
+        handle = os.open(folder, os.O_RDONLY)
+    except OSError:
+        return
+    try:
+        os.fsync(handle)
+    except OSError:
+        pass
+    finally:
+        os.close(handle)
 
 
 def refuse_taken(path: Path) -> None:

@@ -7,9 +7,10 @@ from pathlib import Path
 
 from campaign.errors import refused
 from campaign.ledger.backing import online_copy
-from campaign.ledger.checking import check
+from campaign.ledger.checking import check, damage
 from campaign.ledger.database import REVISION, Database, no_campaign, place, revision
 from campaign.ledger.journal import writing
+from campaign.ledger.starting import made_whole
 
 
 @dataclass(frozen=True)
@@ -25,7 +26,8 @@ def upgrade(given: str | None, who: str | None = None) -> Upgraded:
     """Bring a campaign to this program's schema.
 
     The schema changes and the journal entry about them are one transaction: when anything
-    fails, nothing has changed, and the backup is there besides. Raises Refused for a campaign
+    fails, or the process dies, the campaign stands as it was, and the backup is there besides.
+    Raises Refused for a campaign
     of a newer program, and where the upgraded campaign does not pass its check.
     """
     where = place(given)
@@ -57,7 +59,8 @@ def _backup(database: Database, found: str) -> Path | None:
     for number in range(1, 1000):
         target = own.with_name(f"{own.stem}-before-upgrade-from-{found}-{number}.sqlite")
         if not target.exists():
-            online_copy(own, target)
+            with made_whole(target) as draft:
+                online_copy(own, draft)
             return target
     raise refused(f"there are too many backups beside {own}; move some away", value=own)
 
@@ -73,7 +76,7 @@ def _migrate(database: Database, found: str, who: str | None) -> None:
                 f"the upgrade from schema {found} failed and nothing was changed: {error}",
                 value=found,
             ) from error
-        grave = [p for p in check(pen.connection) if p.grave and "spectrum" not in p.message]
+        grave = damage(check(pen.connection))
         if grave:
             raise refused(
                 f"the upgrade from schema {found} was taken back: {grave[0].about}: "
