@@ -49,6 +49,11 @@ AFFORDABLE_h = 120.0
 LEAST_CHANCE = 0.3
 """Work with less chance than this is not worth filling a budget with."""
 
+LEFT_OPEN = 0.4
+"""What an answer counts that leaves the verdict open, beside one that settles it [1]."""
+
+UNDETERMINED = "undetermined"
+
 LARGEST = "largest term"
 """The axis name under which more cells at the reference condition are proposed."""
 
@@ -69,11 +74,31 @@ class Plan:
 
 
 @dataclass(frozen=True)
+class Option:
+    """A set of new cells: bench hours [h], chance of a decision and of `responds` [1].
+
+    promise: chance of an answer that settles the verdict, and LEFT_OPEN times that of another.
+    """
+
+    hours: float
+    chance: float
+    responds: float
+    promise: float
+    cells: tuple[NewCell, ...]
+
+    @property
+    def price(self) -> float:
+        """Return the bench hours for each promised answer [h]."""
+        return self.hours / self.promise if self.promise > 1e-3 else math.inf
+
+
+@dataclass(frozen=True)
 class Proposal:
     """One line of `next`: cells that decide one axis of one response, and what they promise.
 
     settles: the chance asked for is reached at an affordable cost. changes: ALONE, TOGETHER
-    or STRENGTH. frontier: (hours, chance, cells) of every set considered, cheapest first.
+    or STRENGTH. price: bench hours for each answer to be expected. frontier: every affordable
+    set considered, cheapest first.
     """
 
     electrode: str
@@ -94,7 +119,8 @@ class Proposal:
     between: tuple[str, str] | None = None
     unit: str = ""
     assumed: tuple[str, ...] = ()
-    frontier: tuple[tuple[float, float, tuple[NewCell, ...]], ...] = ()
+    price: float = math.inf
+    frontier: tuple[Option, ...] = ()
 
     def as_dict(self) -> dict[str, Any]:
         """Return the proposal with the keys of the fixed interface, and a few more."""
@@ -156,17 +182,12 @@ def propose(
 
 
 def ranked(proposals: Sequence[Proposal]) -> list[Proposal]:
-    """Return proposals best first.
+    """Return proposals best first: by the bench hours for each answer to be expected.
 
-    Those that settle their question come first, then those that change more than the strength,
-    then the fewer bench hours.
+    An answer that leaves the verdict open counts LEFT_OPEN; what only changes the strength of a
+    verdict comes after everything else.
     """
-
-    def rank(one: Proposal) -> tuple[float, ...]:
-        hours = math.inf if one.hours is None else one.hours
-        return (not one.settles, one.changes == STRENGTH, hours, -(one.chance or 0.0))
-
-    return sorted(proposals, key=rank)
+    return sorted(proposals, key=lambda one: (one.changes == STRENGTH, one.price, one.axis))
 
 
 def of_one(
@@ -234,18 +255,18 @@ def _largest(
         made = largest_layout(where, weighed, criteria.error_probability)
     except Unplannable as reason:
         return [_without(where, asked, str(reason))]
-    return [_best(where, asked, [made], plan)]
+    return [_best(where, asked, made, plan)]
 
 
 def _proposal(where: Scene, asked: Question, finding: Finding, plan: Plan) -> Proposal:
     """Return the proposal for one question: existing levels first, then new ones."""
     try:
         if asked.axis == "potential":
-            made = [potential_layout(where, finding, asked.alpha)]
+            made = potential_layout(where, finding, asked.alpha)
         elif asked.axis == "age":
-            made = [age_layout(where, finding, asked.alpha)]
+            made = age_layout(where, finding, asked.alpha)
         else:
-            made = [layout(where, asked.axis, finding, asked.alpha, new=False)]
+            made = layout(where, asked.axis, finding, asked.alpha, new=False)
     except Unplannable as reason:
         return _without(where, asked, str(reason))
     best = _best(where, asked, made, plan)
@@ -255,10 +276,10 @@ def _proposal(where: Scene, asked: Question, finding: Finding, plan: Plan) -> Pr
         wider = layout(where, asked.axis, finding, asked.alpha, new=True)
     except Unplannable:
         return best
-    if len(wider.slots) == len(made[0].slots):
+    if len(wider.slots) == len(made.slots):
         return best
-    other = _best(where, asked, [wider], plan)
-    return other if (other.settles, other.chance or 0) > (best.settles, best.chance or 0) else best
+    other = _best(where, asked, wider, plan)
+    return other if (not other.settles, other.price) < (not best.settles, best.price) else best
 
 
 def _without(where: Scene, asked: Question, why: str) -> Proposal:
@@ -273,68 +294,84 @@ def _without(where: Scene, asked: Question, why: str) -> Proposal:
 @dataclass(frozen=True)
 class _Tried:
     slots: tuple[int, ...]
-    cells: tuple[NewCell, ...]
-    hours: float
+    option: Option
     outlook: Outlook
 
 
-def _best(where: Scene, asked: Question, layouts: Sequence[Layout], plan: Plan) -> Proposal:
-    """Return the cheapest set that reaches the chance, else the best affordable one."""
-    found: list[tuple[Layout, list[_Tried]]] = [(one, _tried(one, plan)) for one in layouts]
-    pool = [(made, tried) for made, all_ in found for tried in all_]
-    within = [pair for pair in pool if pair[1].hours <= plan.affordable_h + 1e-9]
-    enough = [pair for pair in within if pair[1].outlook.chance >= plan.chance]
+def _best(where: Scene, asked: Question, made: Layout, plan: Plan) -> Proposal:
+    """Return the cheapest set that reaches the chance, else the one that promises most an hour."""
+    pool = _tried(made, asked, plan)
+    within = [one for one in pool if one.option.hours <= plan.affordable_h + 1e-9]
+    enough = [one for one in within if one.outlook.chance >= plan.chance]
     if enough:
-        made, chosen = min(enough, key=lambda pair: (pair[1].hours, -pair[1].outlook.chance))
-        return _told(where, asked, made, chosen, plan, [one[1] for one in within], "")
-    made, most = max(
-        within or pool[:1], key=lambda pair: (round(pair[1].outlook.chance, 3), -pair[1].hours)
-    )
-    dearer = [one for one in pool if one[1].outlook.chance >= plan.chance]
-    return _told(
-        where, asked, made, most, plan, [one[1] for one in within],
-        _shortfall(made, most, dearer, plan),
-    )  # fmt: skip
+        chosen = min(enough, key=lambda one: (one.option.hours, -one.outlook.chance))
+        return _told(where, asked, made, chosen, plan, within, "")
+    chosen = min(within or pool[:1], key=lambda one: (one.option.price, one.option.hours))
+    return _told(where, asked, made, chosen, plan, within, _shortfall(made, pool, within, plan))
 
 
-def _tried(made: Layout, plan: Plan) -> list[_Tried]:
+def _tried(made: Layout, asked: Question, plan: Plan) -> list[_Tried]:
     """Return the outlook of growing sets until one is sure enough, or too large."""
     found = []
     for sequence in sequences(made):
         for n in sizes(MOST_CELLS):
             slots = sequence[:n]
             cells = tuple(made.slots[one].cell for one in slots)
-            hours = hours_of(cells, plan.costs)
+            hours = round(hours_of(cells, plan.costs), 6)
             seen = outlook(
                 made.problem, slots, draws=plan.draws, seed=plan.seed, show=made.show
             )
-            found.append(_Tried(slots, cells, hours, seen))
+            promise = _promise(asked, seen)
+            option = Option(hours, seen.chance, seen.responds, promise, cells)
+            found.append(_Tried(slots, option, seen))
             if seen.chance >= max(plan.chance, 0.5) or hours > 4 * plan.affordable_h:
                 break
     return found
 
 
+def _promise(asked: Question, seen: Outlook) -> float:
+    """Return what a set promises: an answer that settles the verdict counts fully."""
+    if not asked.outcomes:
+        return seen.chance
+    parts = (("responds", seen.responds), ("unresponsive", seen.unresponsive))
+    return sum(
+        chance * (LEFT_OPEN if asked.outcomes.get(word) == UNDETERMINED else 1.0)
+        for word, chance in parts
+    )
+
+
 def _shortfall(
-    made: Layout, most: _Tried, dearer: Sequence[tuple[Layout, _Tried]], plan: Plan
+    made: Layout, pool: Sequence[_Tried], within: Sequence[_Tried], plan: Plan
 ) -> str:
     """Return by how much scatter or cost would have to fall, in a sentence."""
+    most = max(within or pool[:1], key=lambda one: one.outlook.chance)
     parts = []
-    if dearer:
-        cheapest = min((one for _, one in dearer), key=lambda one: one.hours)
+    if most.option.hours <= plan.affordable_h:
         parts.append(
-            f"{len(cheapest.cells)} cells would, at {cheapest.hours:.0f} h: the cost of a cell "
-            f"would have to fall to {plan.affordable_h / cheapest.hours:.0%}"
+            f"{len(most.option.cells)} cells ({most.option.hours:.3g} h) reach "
+            f"{most.outlook.chance:.2f}"
+        )
+    dearer = [one.option for one in pool if one.outlook.chance >= plan.chance]
+    if dearer:
+        cheapest = min(dearer, key=lambda one: one.hours)
+        parts.append(
+            f"{len(cheapest.cells)} cells would do at {cheapest.hours:.0f} h, so the cost of a "
+            f"cell would have to fall to {plan.affordable_h / cheapest.hours:.0%}"
         )
     factor = falls_to(made.problem, most.slots, plan.chance, draws=500, seed=plan.seed)
     if factor is not None and factor < 1:
         now = math.sqrt(made.problem.scatter.typical)
         parts.append(
-            f"the scatter between cells would have to fall from {_scatter(now, made.unit)} to "
+            f"or the scatter between cells from {_scatter(now, made.unit)} to "
             f"{_scatter(now * factor, made.unit)}"
+            if dearer
+            else f"the scatter between cells would have to fall from {_scatter(now, made.unit)} "
+            f"to {_scatter(now * factor, made.unit)}"
         )
     elif factor is None:
-        parts.append("less scatter alone would not do either: the estimate lies at a margin")
-    return f"no affordable work settles it ({plan.affordable_h:g} h): " + "; or ".join(parts)
+        parts.append("less scatter alone would not do: the estimate lies at a margin")
+    limit = f"no work of up to {plan.affordable_h:g} h reaches {plan.chance:g}"
+    return f"{limit}: " + ", ".join(parts)
 
 
 def _scatter(value: float, unit: str) -> str:
@@ -345,34 +382,31 @@ def _told(
     where: Scene, asked: Question, made: Layout, chosen: _Tried, plan: Plan,
     tried: Sequence[_Tried], shortfall: str,
 ) -> Proposal:  # fmt: skip
-    e, seen = made.shown_now, chosen.outlook
+    e, seen, option = made.shown_now, chosen.outlook, chosen.option
     level = 1 - where.criteria.error_probability
     now = None if e is None else _shown(e.interval(level), made.unit)
     expected = _expected(made, seen, asked.alpha, level)
-    settles = not shortfall
     return Proposal(
         electrode=where.electrode,
         axis=asked.axis,
         response=asked.response,
-        cells=chosen.cells,
-        hours=round(chosen.hours, 6),
+        cells=option.cells,
+        hours=option.hours,
         interval_now=now,
         interval_expected=expected,
         chance=seen.chance,
         responds=seen.responds,
-        settles=settles,
+        settles=not shortfall,
         changes=asked.changes,
         alpha=asked.alpha,
-        why=_why(asked, made, chosen, now, expected, shortfall),
-        cautions=cautions_of(chosen.cells, plan.species),
+        why=_why(asked, made, option, now, expected, shortfall),
+        cautions=cautions_of(option.cells, plan.species),
         outcomes=asked.outcomes,
         between=made.between,
         unit=made.unit,
         assumed=made.assumed,
-        frontier=tuple(
-            (one.hours, one.outlook.chance, one.cells)
-            for one in sorted(tried, key=lambda one: one.hours)
-        ),
+        price=option.price,
+        frontier=tuple(sorted((one.option for one in tried), key=lambda one: one.hours)),
     )
 
 
@@ -401,7 +435,7 @@ _OF = {"order": "the order", "factor": "the factor", "kJ/mol": "the difference o
 
 
 def _why(
-    asked: Question, made: Layout, chosen: _Tried, now: tuple[float, float] | None,
+    asked: Question, made: Layout, option: Option, now: tuple[float, float] | None,
     expected: tuple[float, float] | None, shortfall: str,
 ) -> str:  # fmt: skip
     pair = f" {made.between[0]} against {made.between[1]}" if made.between else ""
@@ -413,8 +447,8 @@ def _why(
         start = "none" if now is None else _range(now)
         moved = f"interval of {what} from {start} to about {_range(expected)}{unit}"
     text = (
-        f"{described(chosen.cells)}: {moved}; decides with chance {chosen.outlook.chance:.2f}; "
-        f"{chosen.hours:.3g} h"
+        f"{described(option.cells)}: {moved}; decides with chance {option.chance:.2f}; "
+        f"{option.hours:.3g} h"
     )
     return f"{text}; {shortfall}" if shortfall else text
 
@@ -433,38 +467,41 @@ def _range(interval: tuple[float, float] | None) -> str:
 def within_budget(proposals: Sequence[Proposal], hours: float) -> list[Proposal]:
     """Return the set of proposals, at most one size each, that promises most inside `hours`.
 
-    Promise: chances added, those that change the verdict by themselves counting twice. Solved
-    exactly over half hours.
+    Promises are added, those that change a strength only for a fraction. Solved exactly over
+    half hours.
     """
     steps = math.floor(hours * 2 + 1e-9)
     best: list[tuple[float, tuple[tuple[int, int], ...]]] = [(0.0, ())] * (steps + 1)
     for place, one in enumerate(proposals):
-        weight = {ALONE: 1.0, STRENGTH: 0.3}.get(one.changes, 0.5)
-        options = [
-            (math.ceil(cost * 2 - 1e-9), weight * chance, size)
-            for size, (cost, chance, _) in enumerate(one.frontier)
-            if chance >= LEAST_CHANCE
-        ]
         grown = list(best)
-        for cost, value, size in options:
+        for size, option in enumerate(one.frontier):
+            if option.chance < LEAST_CHANCE:
+                continue
+            cost, value = math.ceil(option.hours * 2 - 1e-9), worth(one, option)
             for spent in range(cost, steps + 1):
                 before = best[spent - cost]
                 if before[0] + value > grown[spent][0] + 1e-12:
                     grown[spent] = (before[0] + value, (*before[1], (place, size)))
         best = grown
-    return [_resized(proposals[place], size) for place, size in best[steps][1]]
+    chosen = [_resized(proposals[place], size, hours) for place, size in best[steps][1]]
+    return ranked(chosen)
 
 
-def _resized(one: Proposal, size: int) -> Proposal:
+def worth(one: Proposal, option: Option) -> float:
+    """Return what a set of a proposal is worth in a budget."""
+    return option.promise * (LEFT_OPEN if one.changes == STRENGTH else 1.0)
+
+
+def _resized(one: Proposal, size: int, hours: float) -> Proposal:
     """Return the proposal with another of its sets."""
-    hours, chance, cells = one.frontier[size]
-    if cells == one.cells:
+    option = one.frontier[size]
+    if option.cells == one.cells:
         return one
     why = (
-        f"{described(cells)}: the best that fits the hours; decides with chance {chance:.2f}; "
-        f"{hours:.3g} h"
+        f"{described(option.cells)}: what pays best inside {hours:g} h; decides with chance "
+        f"{option.chance:.2f}; {option.hours:.3g} h"
     )
     return replace(
-        one, cells=cells, hours=hours, chance=chance, why=why, settles=False, responds=None,
-        interval_expected=None,
+        one, cells=option.cells, hours=option.hours, chance=option.chance, why=why,
+        settles=False, responds=option.responds, price=option.price, interval_expected=None,
     )  # fmt: skip

@@ -10,8 +10,9 @@ bins that still lack campaigns (which leaves what happens inside a bin alone), t
 proposed cells simulated from the truth, and whether the axis is then decided at the error
 probability the proposal names. The interval of a share is the exact one of Clopper & Pearson.
 
-Hours: each proposal followed until the verdict is settled, against the existing design built
-again, one cell of each kind at all its conditions, until it is.
+Hours: the first proposal followed, and the first of what is then proposed, until the verdict is
+settled, against the existing design built again, one cell of each kind at all its conditions,
+until it is.
 
     python tests/benchmarks/planning.py [campaigns a bin] [campaigns for the hours]
 """
@@ -19,6 +20,7 @@ again, one cell of each kind at all its conditions, until it is.
 from __future__ import annotations
 
 import math
+import signal
 import sys
 import time
 from dataclasses import dataclass, replace
@@ -52,6 +54,7 @@ OTHERS = {"R_el": 2.0, "R_sl": 3.0, "R_lat": 4.0}
 BINS = (0.5, 0.6, 0.7, 0.8, 0.9, 0.95)
 DAY_s = 86400.0
 MOST_ROUNDS = 12
+STOP: list[int] = []  # a signal that asked for the tables as they stand
 MOST_HOURS = 1500.0
 
 
@@ -238,7 +241,7 @@ def calibrate(wanted: int, nothing: float, most: int) -> None:
     found: list[list[tuple[str, float, bool]]] = [[] for _ in BINS[1:]]
     trials = 0
     began = time.process_time()
-    while trials < most and min(len(one) for one in found) < wanted:
+    while trials < most and min(len(one) for one in found) < wanted and not STOP:
         rng = np.random.default_rng([SEED, trials, round(100 * nothing)])
         trials += 1
         wanting = [place for place, one in enumerate(found) if len(one) < wanted]
@@ -268,7 +271,7 @@ def calibrate(wanted: int, nothing: float, most: int) -> None:
         share = met / len(results)
         print(f"{low:.2f}-{high:.2f} {len(results):>11}  {stated:>10.3f}  {share:>6.3f}"
               f"  {interval[0]:>6.3f}-{interval[1]:.3f}  {share - stated:>+10.3f}  "
-              f"{told}")  # fmt: skip
+              f"{told}", flush=True)  # fmt: skip
 
 
 def follow(rng: np.random.Generator, campaign: Campaign) -> float:
@@ -304,7 +307,7 @@ def compare(wanted: int, nothing: float) -> None:
     pairs: list[tuple[float, float]] = []
     trial = 0
     began = time.process_time()
-    while len(pairs) < wanted:
+    while len(pairs) < wanted and not STOP:
         rng = np.random.default_rng([SEED, 7, trial])
         trial += 1
         campaign = begin(rng, nothing)
@@ -315,23 +318,23 @@ def compare(wanted: int, nothing: float) -> None:
     ratio = np.median(mine) / np.median(again)
     both = np.isfinite(mine) & np.isfinite(again)
     own = float(np.median(mine[both] / again[both]))
-    print(f"\nHours until settled, {wanted} campaigns ({time.process_time() - began:.0f} s)")
+    print(f"\nHours until settled, {len(pairs)} campaigns ({time.process_time() - began:.0f} s)")
     print(f"following next:      median {np.median(mine):.1f} h, "
           f"not settled {np.mean(~np.isfinite(mine)):.1%}")  # fmt: skip
     print(f"repeating the design: median {np.median(again):.1f} h, "
           f"not settled {np.mean(~np.isfinite(again)):.1%}")  # fmt: skip
-    print(f"ratio of medians {ratio:.2f}; median ratio where both settle {own:.2f}")
+    print(f"ratio of medians {ratio:.2f}; median ratio where both settle {own:.2f}", flush=True)
 
 
 def main() -> None:
     """Run with the sizes given on the command line."""
     wanted = int(sys.argv[1]) if len(sys.argv) > 1 else 300
     hours = int(sys.argv[2]) if len(sys.argv) > 2 else 200
-    for nothing in (0.25, 0.0):
-        calibrate(wanted, nothing, 60 * wanted)
-        sys.stdout.flush()
+    signal.signal(signal.SIGTERM, lambda number, _: STOP.append(number))
     if hours:
         compare(hours, 0.25)
+    for nothing in (0.25, 0.0) if wanted else ():
+        calibrate(wanted, nothing, 100 * wanted)
 
 
 if __name__ == "__main__":

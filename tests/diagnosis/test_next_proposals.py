@@ -19,6 +19,7 @@ from campaign.diagnosis.next_proposals import (
     propose,
     ranked,
     within_budget,
+    worth,
 )
 from campaign.ledger.costs import Costs
 from campaign.ledger.criteria import Criteria
@@ -62,7 +63,7 @@ def test_cells_at_the_extremes_are_proposed_for_an_open_order():
 
 def test_the_fewest_cells_that_reach_the_chance_are_proposed():
     found = by_axis(open_order())["concentration"]
-    smaller = [chance for hours, chance, _ in found.frontier if hours < found.hours]
+    smaller = [one.chance for one in found.frontier if one.hours < found.hours]
     assert smaller and max(smaller) < PLAN.chance
 
 
@@ -141,14 +142,16 @@ def test_too_much_scatter_is_said_with_what_would_have_to_fall():
     rows = made.rows(2, concentrations=(0.8, 1.0), cells=3, between=0.3)
     found = by_axis(rows, replace(PLAN, affordable_h=60.0))["concentration"]
     assert not found.settles and found.hours <= 60.0
-    assert "no affordable work settles it (60 h)" in found.why
-    assert "the scatter between cells would have to fall from" in found.why
+    assert "no work of up to 60 h reaches 0.8" in found.why
+    assert "scatter between cells" in found.why and " % to " in found.why
+    # what is proposed all the same is the set with the fewest hours for each answer
+    assert found.price == min(one.price for one in found.frontier)
 
 
 def test_work_dearer_than_affordable_is_said_with_its_cost():
     found = by_axis(open_order(), replace(PLAN, affordable_h=5.0))["concentration"]
     assert not found.settles
-    assert "the cost of a cell would have to fall to" in found.why
+    assert "so the cost of a cell would have to fall to" in found.why
 
 
 def test_a_potential_that_is_not_comparable_is_not_a_matter_of_more_cells():
@@ -212,11 +215,12 @@ def test_a_budget_is_kept_and_a_larger_one_promises_no_less():
     planned = propose(made.snapshot(rows), CRITERIA, PLAN)
     proposals = ranked([one for each in planned for one in each.proposals])
     promised = []
+    assert [one.price for one in proposals] == sorted(one.price for one in proposals)
     for hours in (10.0, 25.0, 40.0, 80.0):
         chosen = within_budget(proposals, hours)
         assert sum(one.hours for one in chosen) <= hours
         assert len({(one.axis, one.response) for one in chosen}) == len(chosen)
-        promised.append(sum(one.chance for one in chosen))
+        promised.append(sum(worth(one, option_of(one)) for one in chosen))
     assert promised == sorted(promised)
     assert promised[-1] > promised[0]
 
@@ -225,15 +229,20 @@ def test_the_best_set_of_a_budget_is_that_of_trying_all():
     rows = made.rows(3, order=0.3, between=0.12, solvents=("PC", "DMC"))
     planned = propose(made.snapshot(rows), CRITERIA, PLAN)
     proposals = [one for each in planned for one in each.proposals if one.frontier][:3]
-    weight = {0: 1.0, 1: 0.5, 2: 0.3}
     best = 0.0
-    options = [[(0.0, 0.0), *((h, weight[one.changes] * c) for h, c, _ in one.frontier if c >= 0.3)]
-               for one in proposals]  # fmt: skip
+    options = [
+        [(0.0, 0.0), *((o.hours, worth(one, o)) for o in one.frontier if o.chance >= 0.3)]
+        for one in proposals
+    ]
     for combination in itertools.product(*options):
         if sum(hours for hours, _ in combination) <= 30.0:
             best = max(best, sum(value for _, value in combination))
     chosen = within_budget(proposals, 30.0)
-    assert sum(weight[one.changes] * one.chance for one in chosen) == pytest.approx(best)
+    assert sum(worth(one, option_of(one)) for one in chosen) == pytest.approx(best)
+
+
+def option_of(one):
+    return next(option for option in one.frontier if option.cells == one.cells)
 
 
 def test_a_seed_repeats_the_proposals():
