@@ -48,10 +48,34 @@ def amend(
                 expected="a field with another value",
             )
         refuse_disorder(kind, successor)
+        if kind == "cell":
+            _refuse_unstated_potentials(pen.connection, row, successor)
         entry.before["was"] = {field: before for field, (before, _) in changed.items()}
         entry.after["is"] = {field: after for field, (_, after) in changed.items()}
         _replace(pen, entry, kind, row, successor, parts)
     return changed
+
+
+def _refuse_unstated_potentials(connection: Connection, row: Row, successor: Row) -> None:
+    """Only a symmetric cell may have measurements without a potential."""
+    if successor["configuration"] == "symmetric":
+        return
+    table = schema.measurement
+    numbers = connection.execute(
+        select(table.c.record).where(
+            table.c.cell == row["record"], table.c.potential_V.is_(None), in_force(table)
+        )
+    ).scalars()
+    empty = sorted(numbers)
+    if empty:
+        shown = ", ".join(map(str, empty[:5])) + (" ..." if len(empty) > 5 else "")
+        raise refused(
+            f"cell {row['label']} has measurements without a potential ({shown}), which only a "
+            "symmetric cell may have; amend those first",
+            column="configuration",
+            value=successor["configuration"],
+            expected="symmetric, or measurements with a potential",
+        )
 
 
 def _parts(connection: Connection, kind: str, row: Row) -> dict[str, list[Row]]:

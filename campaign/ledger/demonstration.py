@@ -54,7 +54,7 @@ def build(folder: Path) -> Built:
     database = folder / FILE
     tables = folder / "tables"
     if database.exists():
-        open_database(str(database))
+        _refuse_other(open_database(str(database)), folder)
         return Built(database, tables, fresh=False)
     if folder.exists() and (not folder.is_dir() or any(folder.iterdir())):
         raise refused(
@@ -64,6 +64,19 @@ def build(folder: Path) -> Built:
         )
     _fill(folder, database)
     return Built(database, tables, fresh=True)
+
+
+def _refuse_other(database: Database, folder: Path) -> None:
+    """Refuse a campaign that the demo did not start."""
+    table = schema.journal
+    with database.reading() as connection:
+        starter = connection.execute(select(table.c.who).where(table.c.id == 1)).scalar()
+    if starter != WHO:
+        raise refused(
+            f"{folder} holds a campaign of yours, which is left as it is; name another folder",
+            value=folder,
+            expected="an empty or new folder",
+        )
 
 
 def _fill(folder: Path, path: Path) -> None:

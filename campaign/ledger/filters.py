@@ -125,12 +125,18 @@ def _key(text: str | None, name: str) -> str | None:
         ) from None
 
 
-def _instant(connection: Connection, text: str, name: str) -> str:
+def _instant(connection: Connection, text: str, name: str, *, day_end: bool = False) -> str:
+    """Return the instant an option states; of a day its start, or its last microsecond."""
     from campaign.ledger.instants import InstantError, format_utc, parse_instant
     from campaign.ledger.settings import zone
 
     try:
-        return format_utc(parse_instant(text, zone(connection)).utc)
+        own_zone = zone(connection)
+        instant = parse_instant(text, own_zone)
+        if day_end and instant.date_only:
+            # Asked for again at its end: a day with a clock change has 23 or 25 hours.
+            instant = parse_instant(f"{text.strip()}T23:59:59.999999", own_zone)
+        return format_utc(instant.utc)
     except InstantError as error:
         raise refused(
             f"--{name} is '{text}': {error}", column=name, value=text, expected=error.expected
@@ -139,6 +145,4 @@ def _instant(connection: Connection, text: str, name: str) -> str:
 
 def _day_end(connection: Connection, text: str, name: str) -> str:
     """Return the last instant of a day in the campaign's zone, or the instant itself."""
-    if len(text.strip()) == 10:
-        return _instant(connection, f"{text.strip()}T23:59:59.999999", name)
-    return _instant(connection, text, name)
+    return _instant(connection, text, name, day_end=True)

@@ -21,7 +21,10 @@ Row = dict[str, Any]
 
 # What goes with a record when it is withdrawn, and what must be withdrawn before it.
 CHILDREN = {"cell": ("measurement", "cell"), "measurement": ("fit", "measurement")}
-HOLDERS = {"electrode": ("cell", "electrode"), "electrolyte": ("cell", "electrolyte")}
+HOLDERS = {
+    "electrode": (("cell", "electrode"),),
+    "electrolyte": (("cell", "electrolyte"), ("electrode", "pore_electrolyte")),
+}
 
 
 def withdraw(
@@ -40,22 +43,22 @@ def withdraw(
 
 
 def _refuse_held(connection: Connection, kind: str, row: Row) -> None:
-    if kind not in HOLDERS:
-        return
-    child, column = HOLDERS[kind]
-    table = schema.metadata.tables[child]
-    standing = connection.execute(
-        select(table.c.label).where(table.c[column] == row["record"], in_force(table))
-    ).scalars()
-    names = sorted(standing)
-    if names:
-        shown = ", ".join(names[:5]) + (" ..." if len(names) > 5 else "")
-        raise refused(
-            f"{len(names)} cell{'s stand' if len(names) > 1 else ' stands'} on this {kind} "
-            f"({shown}); withdraw first what stands on it",
-            value=row.get("label") or row.get("key"),
-            expected=f"a {kind} without cells",
+    for holder, column in HOLDERS.get(kind, ()):
+        table = schema.metadata.tables[holder]
+        names = sorted(
+            connection.execute(
+                select(table.c.label).where(table.c[column] == row["record"], in_force(table))
+            ).scalars()
         )
+        if names:
+            shown = ", ".join(names[:5]) + (" ..." if len(names) > 5 else "")
+            many = "s stand" if len(names) > 1 else " stands"
+            raise refused(
+                f"{len(names)} {holder}{many} on this {kind} ({shown}); withdraw or amend first "
+                "what stands on it",
+                value=row.get("label") or row.get("key"),
+                expected=f"a {kind} nothing stands on",
+            )
 
 
 def _end_tree(pen: Pen, entry: Entry, kind: str, row: Row) -> None:

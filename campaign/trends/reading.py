@@ -9,6 +9,7 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
+from campaign.chemistry.references import canonical_reference, is_known_reference
 from campaign.errors import refused
 from campaign.ledger.criteria import Criteria
 from campaign.ledger.database import open_database
@@ -67,6 +68,16 @@ def rebuilt(
             expected=", ".join(AXES),
         )
     chosen = _chosen(axis, more or {})
+    if scale is not None:
+        scale = canonical_reference(scale)
+        if not is_known_reference(scale):
+            raise refused(
+                f"potentials cannot be placed on the scale '{scale}': no reference electrode of "
+                "that name is tabulated",
+                column="scale",
+                value=scale,
+                expected="a reference electrode such as Na/Na+, SHE or Ag/AgCl",
+            )
     taken, criteria = read_campaign(db, wanted)
     before = len(taken.readings)
     if without:
