@@ -12,7 +12,7 @@ from campaign.ledger.criteria import Criteria
 from campaign.ledger.readings import Snapshot
 
 EARLIEST_s, LATEST_s = 1e-3, 1e4
-STEPS = 43
+STEPS = 29
 
 
 def budgets_over_time(

@@ -8,7 +8,7 @@ from dataclasses import dataclass
 import numpy as np
 from matplotlib.axes import Axes
 from matplotlib.figure import Figure
-from matplotlib.ticker import LogLocator, NullFormatter
+from matplotlib.ticker import FuncFormatter, LogLocator, NullFormatter
 
 from campaign.diagnosis.budget import TERMS, Budget
 from campaign.diagnosis.reference import Condition
@@ -105,7 +105,14 @@ def draw(panel: Axes, one: OverTime, *, labelled: bool) -> None:
         xytext=(2, -3), textcoords="offset points", va="top", fontsize=6.0,
     )  # fmt: skip
     panel.xaxis.set_major_locator(LogLocator(base=10, numticks=12))
+    panel.xaxis.set_major_formatter(FuncFormatter(_power))
     panel.xaxis.set_minor_formatter(NullFormatter())
-    panel.set_xlabel("$t$ / s")
+    panel.set_xlabel("t / s")
     if labelled:
         panel.set_ylabel("share of the resistance")
+
+
+def _power(value: float, _: object = None) -> str:
+    """Return a power of ten in plain letters, which need no formula to be set."""
+    exponent = round(np.log10(value))
+    return "10" + str(exponent).translate(str.maketrans("-0123456789", "⁻⁰¹²³⁴⁵⁶⁷⁸⁹"))

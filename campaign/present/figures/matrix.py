@@ -95,7 +95,7 @@ def _predictions(panel: Axes, y: int, step: Step, found: Row) -> None:
     for prediction in step.predictions:
         for axis in prediction.axes:
             x = AXES.index(axis)
-            outcome = _held(prediction.outcome, found["diagnostics"][axis]["decision"])
+            outcome = held(prediction.outcome, found["diagnostics"][axis]["decision"])
             letter = prediction.outcome[0]
             _mark(panel, x - 0.14, y, OUTCOME[outcome])
             panel.text(
@@ -107,7 +107,8 @@ def _predictions(panel: Axes, y: int, step: Step, found: Row) -> None:
                fontweight="bold" if status == "stands" else "normal")  # fmt: skip
 
 
-def _held(predicted: str, decision: str) -> str:
+def held(predicted: str, decision: str) -> str:
+    """Return whether a decision confirms a predicted outcome, is against it, or is open."""
     if decision == predicted:
         return "confirmed"
     return "against" if decision.split(":")[0] != "open" else "open"

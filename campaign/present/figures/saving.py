@@ -12,6 +12,8 @@ from campaign.errors import refused
 from campaign.present.figures.style import styled
 
 PNG_DPI = 300
+ON_SCREEN = 1.2
+"""A figure on a page is shown this much larger than in a journal."""
 
 _METADATA: dict[str, dict[str, str | None]] = {
     "svg": {"Date": None, "Creator": None},
@@ -22,6 +24,10 @@ _METADATA: dict[str, dict[str, str | None]] = {
 
 def content(figure: Figure, kind: str) -> bytes:
     """Return a figure as the bytes of an svg, pdf or png file."""
+    for axes in figure.axes:
+        # what lies inside a panel never moves it, and measuring every mark takes long
+        for artist in (*axes.lines, *axes.collections, *axes.patches):
+            artist.set_in_layout(False)
     stream = io.BytesIO()
     with styled():
         figure.savefig(stream, format=kind, dpi=PNG_DPI, metadata=_METADATA[kind])
@@ -67,6 +73,6 @@ def inline_svg(figure: Figure, name: str, title: str) -> str:
     text = re.sub(r'width="[\d.]+pt" height="[\d.]+pt" ', "", text, count=1)
     opening = (
         f'<svg role="img" aria-label="{escape(title)}" '
-        f'style="width:{float(width) / 72:.3f}in;aspect-ratio:{width}/{height}"'
+        f'style="width:{float(width) / 72 * ON_SCREEN:.3f}in;aspect-ratio:{width}/{height}"'
     )
     return text.replace("<svg", opening, 1).strip()

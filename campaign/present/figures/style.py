@@ -185,6 +185,7 @@ def plain_log(axis: Any, spread: float, room_mm: float = 50.0) -> None:
     fine = tuple(float(i) for i in range(1, 10)) if len(subs) <= 8 else ()
     axis.set_minor_locator(LogLocator(base=10, subs=fine, numticks=20) if fine else NullLocator())
     axis.set_minor_formatter(NullFormatter())
+    axis.set_tick_params(which="minor", label1On=False, label2On=False)
 
 
 def _plain(value: float, _: object = None) -> str:

@@ -19,7 +19,7 @@ from campaign.present.numbers import with_interval
 from campaign.trends.curves import Curve
 from campaign.trends.results import AxisResult, OrderEstimate
 
-BASIS = {"mol/L": r"$c$ / (mol L$^{-1}$)", "mol/kg": r"$b$ / (mol kg$^{-1}$)"}
+BASIS = {"mol/L": "c / (mol L⁻¹)", "mol/kg": "b / (mol kg⁻¹)"}
 MOST_NAMED = 12
 
 
@@ -39,8 +39,8 @@ def draw(result: AxisResult, curves: Sequence[Curve], width: str) -> Figure:
 def _concentration(curve: Curve) -> str:
     estimate = curve.estimate
     if isinstance(estimate, OrderEstimate) and estimate.in_activity:
-        return "activity $a$"
-    return BASIS.get(estimate.basis, "$c$")
+        return "activity a"
+    return BASIS.get(estimate.basis, "c")
 
 
 def _panel(panel: Axes, curve: Curve, *, narrow: bool) -> None:
@@ -60,7 +60,7 @@ def _panel(panel: Axes, curve: Curve, *, narrow: bool) -> None:
     word = (estimate.decision or "").split(":")[0]
     title = series_title(estimate.electrode, blend(estimate), panel)
     between = "\n" if narrow else ", "
-    panel.set_title(f"{title}\n$m$ = {value}{between}{word}", fontsize=6.0 if narrow else 7.0)
+    panel.set_title(f"{title}\nm = {value}{between}{word}", fontsize=6.0 if narrow else 7.0)
     panel.text(
         0.03, 0.03, curve.held, transform=panel.transAxes, ha="left", va="bottom",
         fontsize=5.6, color=style.QUIET,

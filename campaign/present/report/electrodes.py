@@ -5,6 +5,8 @@ from __future__ import annotations
 from collections.abc import Mapping, Sequence
 from typing import Any
 
+from campaign.diagnosis.signatures import AXES, CANDIDATES, Step
+from campaign.present.figures.matrix import held
 from campaign.present.numbers import share, with_interval
 from campaign.present.report.figures import Figures
 from campaign.present.report.gathering import Trend
@@ -27,7 +29,7 @@ def electrode(row: Row, trends: Sequence[Trend], figures: Figures, anchor: str) 
         listed(row["because"], "Because"),
         listed(row["missing"], "Missing"),
         _diagnostics(row["diagnostics"]),
-        figures.evidence(row),
+        _predictions(row["terms"]),
         _candidates(row["terms"]),
         _budget(row["budget_by_time"]),
         *(figures.trend(one) for one in trends),
@@ -64,6 +66,45 @@ def _value(row: Row) -> str:
     return with_interval(row["estimate"], row["interval"])
 
 
+MARKS = {"confirmed": "●", "against": "✕", "open": "○"}
+
+
+def _predictions(terms: Mapping[str, Row]) -> Html:
+    """Return a table of each step's predictions and what was found, a mark and a word each."""
+    rows = [
+        {"term": term, "found": found, "step": step, "status": one["status"]}
+        for term, found in terms.items()
+        for one in found["candidates"]
+        for step in CANDIDATES
+        if step.name == one["step"]
+    ]
+
+    def column(axis: str) -> Column:
+        return Column(axis, lambda row: _mark(row["step"], row["found"], axis))
+
+    columns = (
+        Column("step", lambda row: row["step"].name),
+        text("term", "term"),
+        *map(column, AXES),
+        Column("status", lambda row: tag("b", row["status"]) if row["status"] == "stands"
+               else row["status"]),
+    )  # fmt: skip
+    legend = (
+        "Predictions: R, r should respond; U, u should not; capital: required. "
+        "● as predicted, ✕ against it, ○ open"
+    )
+    return table(rows, columns, legend)
+
+
+def _mark(step: Step, found: Row, axis: str) -> str:
+    for prediction in step.predictions:
+        if axis in prediction.axes:
+            letter = prediction.outcome[0]
+            outcome = held(prediction.outcome, found["diagnostics"][axis]["decision"])
+            return f"{MARKS[outcome]} {letter.upper() if prediction.required else letter}"
+    return ""
+
+
 def _candidates(terms: Mapping[str, Row]) -> Html:
     parts: list[Html] = []
     for term, found in terms.items():
@@ -92,7 +133,7 @@ def _budget(budgets: Sequence[Row]) -> Html:
     return table(
         budgets,
         (figure("t / s", "time_s"), *map(column, terms),
-         figure("R_el / (ohm cm2)", "R_el_ohm_cm2"), text("largest", "dominant")),
+         figure("R_el / (ohm cm2)", "R_el_ohm_cm2")),
         "Shares of the resistance after a current step",
     )  # fmt: skip
 

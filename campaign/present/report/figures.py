@@ -9,7 +9,7 @@ from typing import Any
 from matplotlib.figure import Figure
 
 from campaign.present.figures.budget import budget_figure, over_time
-from campaign.present.figures.matrix import evidence_matrix, summary_matrix
+from campaign.present.figures.matrix import summary_matrix
 from campaign.present.figures.saving import inline_svg
 from campaign.present.figures.trends import trend_figure
 from campaign.present.report.gathering import Content, Trend
@@ -37,11 +37,6 @@ class Figures:
             budget_figure(drawn, "two"),
             "Share of each term after a current step; bands are 95 % intervals",
         )
-
-    def evidence(self, row: Row) -> Html:
-        """Return predictions and findings of one electrode."""
-        caption = "Predictions of each step, and what was found"
-        return self._put(evidence_matrix(row, "two"), caption)
 
     def trend(self, trend: Trend) -> Html:
         """Return the figure of one trend."""

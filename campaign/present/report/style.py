@@ -34,8 +34,8 @@ th button::after { content: "\\2195"; color: var(--quiet); padding-left: .3em; f
 th[aria-sort=ascending] button::after { content: "\\2191"; }
 th[aria-sort=descending] button::after { content: "\\2193"; }
 caption { text-align: left; color: var(--quiet); padding: .25rem 0; }
-figure { margin: .75rem 0; break-inside: avoid; }
-figure svg { max-width: 100%; height: auto; display: block; }
+figure { margin: .75rem 0; break-inside: avoid; overflow-x: auto; }
+figure svg { max-width: 100%; min-width: 34rem; height: auto; display: block; }
 figcaption { color: var(--quiet); font-size: .88rem; }
 details { margin: .5rem 0; } summary { cursor: pointer; }
 code { font-size: .85em; overflow-wrap: anywhere; }
@@ -43,7 +43,7 @@ code { font-size: .85em; overflow-wrap: anywhere; }
 @media print {
   body { font-size: 10pt; max-width: none; padding: 0; }
   nav, th button::after { display: none; }
-  .wide { overflow: visible; } h2, h3, h4 { break-after: avoid; } tr { break-inside: avoid; }
+  .wide, figure { overflow: visible; } figure svg { min-width: 0; } h2, h3, h4 { break-after: avoid; } tr { break-inside: avoid; }
   a { color: inherit; text-decoration: none; }
 }
 """
@@ -71,6 +71,9 @@ for (const heading of document.querySelectorAll("table.sortable th button")) {
     body.append(...Array.from(body.rows).sort(order));
   });
 }
+addEventListener("beforeprint", () => {
+  for (const part of document.querySelectorAll("details")) part.open = true;
+});
 """
 
 
