@@ -17,6 +17,7 @@ from campaign.cli import (
     criteria,
     demo,
     explain,
+    export,
     history,
     imports,
     init,
@@ -34,6 +35,7 @@ from campaign.cli import (
 )
 from campaign.cli.grouping import Grouped
 from campaign.errors import Fault, Refused, refused
+from campaign.present.terminal import guard_streams
 
 WRONG_USAGE = 2
 AS_JSON = "--json"
@@ -93,13 +95,12 @@ app.command("timeline", rich_help_panel=ANSWER)(timeline.timeline)
 app.command("coverage", rich_help_panel=ANSWER)(coverage.coverage)
 app.command("next", rich_help_panel=ANSWER)(next.next_steps)
 app.command("report", rich_help_panel=HAND)(report.report)
+app.command("export", rich_help_panel=HAND)(export.export)
 
 
 def main() -> None:
     """Run the command line; exit 0 done, 1 refused (nothing written), 2 wrong usage."""
-    for stream in (sys.stdout, sys.stderr):
-        # A terminal of another encoding gets \xb1 for what it cannot show, not a failure.
-        stream.reconfigure(errors="backslashreplace")  # type: ignore[union-attr]
+    guard_streams()
     try:
         _run()
     except BrokenPipeError:

@@ -14,6 +14,7 @@ from dataclasses import dataclass
 from typing import Any
 
 from campaign.present.numbers import number
+from campaign.present.terminal import coloured, harmless
 
 WIDEST = 100
 GAP = 2
@@ -43,7 +44,7 @@ def show_table(
 ) -> None:
     """Print rows as a table; columns that are empty throughout are left out."""
     kept = [c for c in columns if any(c.show(row.get(c.key)) for row in rows)]
-    cells = [[c.show(row.get(c.key)) for c in kept] for row in rows]
+    cells = [[harmless(c.show(row.get(c.key))) for c in kept] for row in rows]
     if at_terminal():
         _framed(cells, kept, title)
     else:
@@ -53,7 +54,7 @@ def show_table(
 def fits(rows: Sequence[Mapping[str, Any]], columns: Sequence[Column]) -> bool:
     """Return whether a table fits the terminal without a number being cut off."""
     kept = [c for c in columns if any(c.show(row.get(c.key)) for row in rows)]
-    cells = [[c.show(row.get(c.key)) for c in kept] for row in rows]
+    cells = [[harmless(c.show(row.get(c.key))) for c in kept] for row in rows]
     gaps = GAP * (len(kept) - 1)
     width = min(shutil.get_terminal_size((WIDEST, 40)).columns, 160)
     return sum(_widths(cells, kept, width - gaps)) + gaps <= width
@@ -88,7 +89,7 @@ def _framed(cells: Sequence[Sequence[str]], columns: Sequence[Column], title: st
     from rich.text import Text
 
     table = Table(
-        title=Text(title) if title else None,
+        title=Text(harmless(title)) if title else None,
         title_justify="left",
         box=box.HORIZONTALS,
         pad_edge=False,
@@ -106,7 +107,7 @@ def _framed(cells: Sequence[Sequence[str]], columns: Sequence[Column], title: st
         )
     for row in cells:
         table.add_row(*(Text(text) for text in row))
-    Console(width=width, highlight=False).print(table)
+    Console(file=coloured(), width=width, highlight=False).print(table)
 
 
 def _widths(
