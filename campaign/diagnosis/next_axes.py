@@ -17,7 +17,7 @@ from campaign.kinetics.constants import GAS_CONSTANT
 from campaign.ledger.criteria import Criteria
 from campaign.ledger.readings import FloatArray, IntArray, Readings, Snapshot
 from campaign.statistics.equivalence import Family
-from campaign.trends import between, concentration, levels, pairs, temperature
+from campaign.trends import between, concentration, levels
 from campaign.trends.barriers import barriers, usable
 from campaign.trends.between import NoContrast
 from campaign.trends.findings import Finding
@@ -251,8 +251,7 @@ def layout(where: Scene, axis: str, finding: Finding, alpha: float, new: bool) -
     how = AXES[axis]
     if not finding.tested:
         return _untested(where, how, finding, alpha)
-    s, kept, k_new = _sample(where, how)
-    return _tested(where, how, finding, alpha, new, s, kept, k_new)
+    return _tested(where, how, finding, alpha, new, *_sample(where, how))
 
 
 def held_open(reason: str) -> str:
@@ -264,28 +263,41 @@ def held_open(reason: str) -> str:
     }.get(reason, f"more cells alone do not help: {reason}")
 
 
-def _sample(where: Scene, how: Axis) -> tuple[Sample, Sample, float]:
-    """Return the sample whose rows are units or readings, the readings used, and k of new."""
+def _sample(where: Scene, how: Axis) -> tuple[Sample, Sample]:
+    """Return the readings that are compared on an axis (barriers: one row a barrier), and the
+    readings the conditions of new cells are taken from.
+
+    As the trends do it, without the fit: strata with one level only are left out.
+    """
     try:
-        if how.name == "concentration":
-            s = attempt(where.whole, lambda part: concentration.order(part, where.criteria)).sample
-            return s, s, 1.0
         if how.name == "barrier":
-            fitted = attempt(where.whole, lambda part: temperature.fit(part, where.criteria))
             readings, _ = usable(comparable(where.whole))
-            return fitted.sample, readings, 1.0
-        comparison = pairs.SOLVENT if how.name == "solvent" else pairs.ADDITIVE
-        s = attempt(
-            where.whole, lambda part: pairs.compare(part, where.criteria, comparison)
-        ).sample
-        return s, s, 1.0
+            return attempt(where.whole, lambda part: _barriers(where, how, part)), readings
+        s = attempt(where.whole, lambda part: _compared(where, how, part))
+        return s, s
     except NoContrast as reason:  # the finding said otherwise a moment ago
         raise Unplannable(str(reason)) from reason
 
 
+def _barriers(where: Scene, how: Axis, part: Sample) -> Sample:
+    return _compared(where, how, barriers(*usable(part)).by_specimen)
+
+
+def _compared(where: Scene, how: Axis, part: Sample) -> Sample:
+    if not len(part):
+        raise NoContrast(f"no readings with {part.response}")
+    recipes = measured(where, part)
+    level = _levels(part, recipes, how)[1]
+    stratum = combine(part.c.temperature, part.state, _coded(part, recipes, how.group))
+    lone = between.lone(stratum, level)
+    if lone.all():
+        raise NoContrast("no stratum holds two levels under equal conditions")
+    return part.leaving(lone, between.NO_STRATUM_CONTRAST)
+
+
 def _tested(
     where: Scene, how: Axis, finding: Finding, alpha: float, new: bool,
-    s: Sample, readings: Sample, k_new: float,
+    s: Sample, readings: Sample,
 ) -> Layout:  # fmt: skip
     recipes = measured(where, s)
     stratum_held = _coded(s, recipes, how.group)

@@ -196,10 +196,15 @@ def of_one(
     electrode: str,
     plan: Plan,
     axes: Sequence[str] | None = None,
+    outcome: Outcome | None = None,
 ) -> Planned:
-    """Return the proposals of one electrode, one a question; none where the verdict is strong."""
-    part = of_electrode(snapshot, electrode)
-    outcome = settle(part, criteria, electrode, trend_evidence)
+    """Return the proposals of one electrode, one a question; none where the verdict is strong.
+
+    outcome: of `settle`, where it is at hand.
+    """
+    if outcome is None:
+        part = of_electrode(snapshot, electrode)
+        outcome = settle(part, criteria, electrode, trend_evidence)
     verdict = outcome.verdict
     found: list[Proposal] = []
     if verdict.strength != "strong":

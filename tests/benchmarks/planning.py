@@ -223,11 +223,12 @@ def one_trial(
     """
     campaign = begin(rng, nothing)
     taken = snapshot(campaign.rows)
-    if settle(taken, CRITERIA, "film", trend_evidence).verdict.word != "undetermined":
+    outcome = settle(taken, CRITERIA, "film", trend_evidence)
+    if outcome.verdict.word != "undetermined":
         return None
     plan = Plan(COSTS, chance=float(rng.uniform(*asked)), affordable_h=400.0,
                 seed=int(rng.integers(2**31)), draws=1000)  # fmt: skip
-    proposals = of_one(taken, CRITERIA, "film", plan).proposals
+    proposals = of_one(taken, CRITERIA, "film", plan, outcome=outcome).proposals
     if not proposals or proposals[0].chance is None or proposals[0].axis == LARGEST:
         return None
     first = proposals[0]
