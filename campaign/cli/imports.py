@@ -11,7 +11,8 @@ from campaign.cli.options import By, Db, Json, Reason
 
 def import_tables(
     files: Annotated[
-        list[str], typer.Argument(metavar="FILE...", help="Flat tables: CSV or XLSX.")
+        list[str],
+        typer.Argument(metavar="FILE...", help="Flat tables, CSV or XLSX; or one data package."),
     ],
     dry_run: Annotated[
         bool, typer.Option("--dry-run", help="Show what it would add; write nothing.")
@@ -45,10 +46,18 @@ def import_tables(
     from campaign.ledger.files import read_files
     from campaign.ledger.importing import Choices
     from campaign.ledger.importing import import_tables as enter
+    from campaign.ledger.package.reading import is_package
     from campaign.present.importing import show_outcome
     from campaign.present.progress import progress_bar
 
     database = open_database(db)
+    if len(files) == 1 and is_package(files[0]):
+        from campaign.ledger.package.reading import import_package
+        from campaign.present.importing import show_package
+
+        counts = import_package(database, files[0], by, dry_run=dry_run)
+        show_package(counts, as_json=json, dry_run=dry_run)
+        return
     tables = read_files(database, files, mapping=mapping, decimal=decimal, sheet=sheet)
     with progress_bar():
         outcome = enter(database, tables, Choices(refit, restore, dry_run), by, reason)

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from enum import Enum
+from enum import StrEnum
 from typing import Annotated
 
 import typer
@@ -11,7 +11,7 @@ from campaign.cli.emptied import tell_if_empty
 from campaign.cli.options import Asked, query
 
 
-class Kind(str, Enum):
+class Kind(StrEnum):
     """What can be listed."""
 
     electrodes = "electrodes"

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from collections.abc import Mapping
+
 from campaign.ledger.importing import Outcome
 from campaign.present.refusals import note
 from campaign.present.tables import show_json
@@ -76,3 +78,18 @@ def _counts(outcome: Outcome) -> str:
             (outcome.measurements, "measurement"),
         )
     )
+
+
+def show_package(counts: Mapping[str, int], *, as_json: bool, dry_run: bool) -> None:
+    """Print what was entered from a data package."""
+    if as_json:
+        kinds = {"electrodes": "electrode", "electrolytes": "electrolyte", "cells": "cell",
+                 "measurements": "measurement"}  # fmt: skip
+        added = {name: counts[table] for name, table in kinds.items()}
+        show_json({"added": added, "unchanged": 0, "rows": counts, "dry_run": dry_run})
+        return
+    listed = ", ".join(
+        f"{count} {name.replace('_', ' ')}" for name, count in counts.items() if count
+    )
+    verb = "Would enter" if dry_run else "Entered"
+    print(f"{verb} from the data package: {listed}.")
