@@ -78,6 +78,15 @@ def asks_for_measurements(wanted: Filter) -> bool:
     return any(value is not None for value in asked)
 
 
+def cells_query(wanted: Filter, *columns: Any) -> Select[Any]:
+    """Return a query over the cells in force that a filter keeps, whatever was measured."""
+    return (
+        select(*columns)
+        .select_from(_cells_joined(wanted.as_of))
+        .where(*_cell_conditions(wanted))
+    )
+
+
 def measurements_query(wanted: Filter, *columns: Any, fitted: bool = False) -> Select[Any]:
     """Return a query over the measurements in force that a filter keeps.
 

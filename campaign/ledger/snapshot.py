@@ -2,8 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping, Sequence
-from datetime import datetime
+from collections.abc import Iterator, Mapping, Sequence
 from typing import TYPE_CHECKING, Any
 
 import numpy as np
@@ -17,75 +16,115 @@ from campaign.ledger.readings import (
     ElectrodeFacts,
     ElectrolyteFacts,
     FloatArray,
+    IntArray,
     Plateau,
     Readings,
     Snapshot,
 )
-from campaign.ledger.selecting import measurements_query
+from campaign.ledger.selecting import cells_query, measurements_query
 from campaign.ledger.settings import in_force
 
 if TYPE_CHECKING:
-    from sqlalchemy import Connection
-
-EPOCH = datetime.fromisoformat("1970-01-01T00:00:00+00:00")
-
+    from sqlalchemy import Connection, Select
 
 def snapshot(connection: Connection, wanted: Filter | None = None) -> Snapshot:
     """Return the measurements a filter keeps, with their current fits and what they refer to."""
     wanted = wanted or Filter()
     electrodes = electrode_facts(connection, wanted.as_of)
     electrolytes = electrolyte_facts(connection, wanted.as_of)
-    rows = _measurement_rows(connection, wanted)
-    readings = _readings(connection, wanted, rows, electrodes)
+    readings = _readings(connection, wanted, electrodes)
     return Snapshot(readings, electrodes, electrolytes, _left_out(connection, wanted, readings))
 
 
-def _measurement_rows(connection: Connection, wanted: Filter) -> list[Any]:
-    m, c, e, y = schema.measurement, schema.cell, schema.electrode, schema.electrolyte
+def columns(
+    connection: Connection, query: Select[Any], block: int = 500
+) -> Iterator[list[tuple[Any, ...]]]:
+    """Yield the rows of a query in blocks, each turned into columns.
+
+    The driver's own rows are read: a campaign has a million values, and each object that is
+    put around a row costs more than the row. Numbers and texts need no conversion.
+    """
+    cursor = connection.execute(query).cursor
+    while rows := cursor.fetchmany(block):
+        yield list(zip(*rows, strict=True))
+
+
+def _cells(connection: Connection, wanted: Filter) -> list[tuple[Any, ...]]:
+    """Return the columns of the cells a filter keeps, sorted by electrode and label."""
+    c, e, y = schema.cell, schema.electrode, schema.electrolyte
+    query = cells_query(
+        wanted,
+        e.c.label, c.c.label, c.c.record, c.c.specimen, y.c.key, y.c.salt_key, y.c.solvent_key,
+        y.c.additive_key, y.c.basis, y.c.aqueous, c.c.area_cm2, c.c.configuration,
+        c.c.reference, c.c.assembled_at,
+    )  # fmt: skip
+    rows = sorted((tuple(row) for row in connection.execute(query)), key=lambda row: row[:3])
+    return list(zip(*rows, strict=True)) if rows else [()] * 14
+
+
+def _measurements(connection: Connection, wanted: Filter) -> list[Any]:
+    """Return the columns of the measurements a filter keeps, as arrays; texts as instants."""
+    m = schema.measurement
     query = measurements_query(
         wanted,
-        m.c.record, c.c.label, c.c.specimen, e.c.label, y.c.key, y.c.salt_key, y.c.solvent_key,
-        y.c.additive_key, y.c.basis, y.c.aqueous, c.c.area_cm2, c.c.configuration,
-        c.c.reference, m.c.potential_V, m.c.temperature_K, m.c.ion_content, m.c.E_half_V,
-        m.c.measured_at, c.c.assembled_at, m.c.cycle, schema.fit.c.id,
+        m.c.record, schema.cell.c.record, schema.fit.c.id, m.c.measured_at, m.c.potential_V,
+        m.c.temperature_K, m.c.ion_content, m.c.E_half_V, m.c.cycle,
         fitted=True,
     )  # fmt: skip
-    return list(connection.execute(query.order_by(e.c.label, c.c.label, m.c.measured_at)))
+    kinds = (*(np.int64,) * 3, None, *(np.float64,) * 5)
+    blocks = [
+        [
+            _seconds(column) if kind is None else np.array(column, dtype=kind)
+            for column, kind in zip(found, kinds, strict=True)
+        ]
+        for found in columns(connection, query)
+    ]
+    if not blocks:
+        return [np.zeros(0, dtype=kind or np.float64) for kind in kinds]
+    return [np.concatenate(parts) for parts in zip(*blocks, strict=True)]
 
 
 def _readings(
-    connection: Connection,
-    wanted: Filter,
-    rows: Sequence[Any],
-    electrodes: Mapping[str, ElectrodeFacts],
+    connection: Connection, wanted: Filter, electrodes: Mapping[str, ElectrodeFacts]
 ) -> Readings:
-    columns = list(zip(*rows, strict=True)) if rows else [()] * 21
-    text = [_texts(columns[i]) for i in range(12)]
-    fits = np.array(columns[20], dtype=np.int64)
+    cells = _cells(connection, wanted)
+    records = np.array(cells[2], dtype=np.int64)
+    found = _measurements(connection, wanted)
+    by_record = np.argsort(records)
+    owner = by_record[np.searchsorted(records, found[1], sorter=by_record)]
+    order = np.lexsort((found[3], owner))
+    measurement, _, fits, measured_at, potential, temperature, content, half, cycle = (
+        column[order] for column in found
+    )
+    owner = owner[order]
     values, se, absent = _values(connection, wanted, fits)
-    recipe_ion = list(zip(columns[4], columns[3], strict=True))
+
+    def texts(column: int) -> Any:
+        return _texts(cells[column])[owner]
+
+    recipe_ion = list(zip(cells[4], cells[0], strict=True))
     return Readings(
-        measurement=np.array(columns[0], dtype=np.int64),
-        cell=text[1],
-        specimen=text[2],
-        electrode=text[3],
-        electrolyte=text[4],
-        salt=text[5],
-        solvents=text[6],
-        additives=text[7],
-        concentration=_concentrations(connection, recipe_ion, electrodes),
-        basis=text[8],
-        aqueous=np.array(columns[9], dtype=bool),
-        area_cm2=_numbers(columns[10]),
-        configuration=text[11],
-        reference=_texts(columns[12]),
-        potential_V=_numbers(columns[13]),
-        temperature_K=_numbers(columns[14]),
-        ion_content=_numbers(columns[15]),
-        E_half_V=_numbers(columns[16]),
-        measured_at=_seconds(columns[17]),
-        assembled_at=_seconds(columns[18]),
-        cycle=_numbers(columns[19]),
+        measurement=measurement,
+        cell=texts(1),
+        specimen=texts(3),
+        electrode=texts(0),
+        electrolyte=texts(4),
+        salt=texts(5),
+        solvents=texts(6),
+        additives=texts(7),
+        concentration=_concentrations(connection, recipe_ion, electrodes)[owner],
+        basis=texts(8),
+        aqueous=np.array(cells[9], dtype=bool)[owner],
+        area_cm2=np.array(cells[10], dtype=np.float64)[owner],
+        configuration=texts(11),
+        reference=texts(12),
+        potential_V=potential,
+        temperature_K=temperature,
+        ion_content=content,
+        E_half_V=half,
+        measured_at=measured_at,
+        assembled_at=_seconds(cells[13])[owner],
+        cycle=cycle,
         values=values,
         se=se,
         absent=absent,
@@ -98,16 +137,12 @@ def _texts(column: Sequence[Any]) -> Any:
     return array
 
 
-def _numbers(column: Sequence[Any]) -> FloatArray:
-    return np.array([np.nan if value is None else value for value in column], dtype=np.float64)
-
-
 def _seconds(column: Sequence[str | None]) -> FloatArray:
-    known: dict[str | None, float] = {None: float("nan")}
-    for text in column:
-        if text not in known and text is not None:
-            known[text] = (datetime.fromisoformat(text) - EPOCH).total_seconds()
-    return np.array([known[text] for text in column], dtype=np.float64)
+    """Return stored instants (fixed-width UTC texts) in seconds since 1970, NaN for None."""
+    texts = ["NaT" if text is None else text[:26] for text in column]
+    at = np.array(texts, dtype="datetime64[us]")
+    seconds = at.astype(np.int64) / 1e6
+    return np.where(np.isnat(at), np.nan, seconds)
 
 
 def _concentrations(
@@ -131,33 +166,36 @@ def _concentrations(
 
 
 def _values(
-    connection: Connection, wanted: Filter, fits: Any
+    connection: Connection, wanted: Filter, fits: IntArray
 ) -> tuple[dict[str, FloatArray], dict[str, FloatArray], dict[str, BoolArray]]:
-    n = len(fits)
-    values = {name: np.full(n, np.nan) for name in QUANTITIES}
-    errors = {name: np.full(n, np.nan) for name in QUANTITIES}
-    absent = {name: np.zeros(n, dtype=bool) for name in QUANTITIES}
+    """Return the fitted values of `fits` by quantity, each array as long as `fits`."""
+    n, code_of = len(fits), {name: code for code, name in enumerate(QUANTITIES)}
+    values = np.full((len(QUANTITIES), n), np.nan)
+    errors = np.full((len(QUANTITIES), n), np.nan)
+    absent = np.zeros((len(QUANTITIES), n), dtype=bool)
     table, fit = schema.fitted_value, schema.fit
     query = (
         select(table.c.fit, table.c.quantity, table.c.value, table.c.se)
         .select_from(table.join(fit, fit.c.id == table.c.fit))
         .where(in_force(fit, wanted.as_of))
     )
-    found = connection.execute(query).all() if n else []
-    if not found:
-        return values, errors, absent
-    fit_id, name, value, se = zip(*found, strict=True)
     order = np.argsort(fits, kind="stable")
-    at = np.searchsorted(fits, np.array(fit_id, dtype=np.int64), sorter=order)
-    at = order[np.minimum(at, n - 1)]
-    kept = fits[at] == np.array(fit_id, dtype=np.int64)
-    names, numbers, scatter = np.array(name, dtype=object), _numbers(value), _numbers(se)
-    for quantity in QUANTITIES:
-        mask = kept & (names == quantity)
-        values[quantity][at[mask]] = numbers[mask]
-        errors[quantity][at[mask]] = scatter[mask]
-        absent[quantity][at[mask]] = np.isnan(numbers[mask])
-    return values, errors, absent
+    in_order = fits[order]
+    for owners, names, numbers, scatter in columns(connection, query) if n else ():
+        owner = np.array(owners, dtype=np.int64)
+        place = np.minimum(np.searchsorted(in_order, owner), n - 1)
+        kept = in_order[place] == owner
+        at = order[place[kept]]
+        code = np.array([code_of[name] for name in names], dtype=np.int64)[kept]
+        value = np.array(numbers, dtype=np.float64)[kept]
+        values[code, at] = value
+        errors[code, at] = np.array(scatter, dtype=np.float64)[kept]
+        absent[code, at] = np.isnan(value)
+    return (
+        {name: values[code] for name, code in code_of.items()},
+        {name: errors[code] for name, code in code_of.items()},
+        {name: absent[code] for name, code in code_of.items()},
+    )
 
 
 def _left_out(connection: Connection, wanted: Filter, readings: Readings) -> dict[str, int]:
