@@ -31,6 +31,7 @@ from campaign.cli import (
     timeline,
     trend,
     upgrade,
+    watch,
     withdraw,
 )
 from campaign.cli.grouping import Grouped
@@ -78,6 +79,7 @@ app.command("template", rich_help_panel=START)(template.template)
 app.add_typer(add.app, name="add", rich_help_panel=RECORD)
 app.command("log", rich_help_panel=RECORD)(log.log)
 app.command("import", rich_help_panel=RECORD)(imports.import_tables)
+app.command("watch", rich_help_panel=RECORD)(watch.watch)
 app.command("amend", rich_help_panel=CORRECT)(amend.amend)
 app.command("withdraw", rich_help_panel=CORRECT)(withdraw.withdraw)
 app.command("criteria", rich_help_panel=CORRECT)(criteria.criteria)
