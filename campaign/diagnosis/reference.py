@@ -9,8 +9,8 @@ import numpy as np
 
 from campaign.kinetics.constants import ZERO_CELSIUS_K
 from campaign.ledger.criteria import Criteria
-from campaign.ledger.readings import BoolArray, Readings
-from campaign.trends.strata import match
+from campaign.ledger.readings import BoolArray, IntArray, Readings
+from campaign.trends.strata import combine, factor, match
 
 ROOM_K = ZERO_CELSIUS_K + 25
 
@@ -50,15 +50,25 @@ def conditions(
     """Return every combination of electrolyte, temperature and potential that was measured."""
     temperature = match(readings.temperature_K, criteria.temperature_tolerance_K).codes
     potential = match(readings.potential_V, criteria.potential_tolerance_V).codes
-    groups: dict[tuple[str, int, str, int], list[int]] = {}
-    for row in range(len(readings)):
-        if usable is None or usable[row]:
-            key = (
-                str(readings.electrolyte[row]), int(temperature[row]),
-                str(readings.reference[row]), int(potential[row]),
-            )  # fmt: skip
-            groups.setdefault(key, []).append(row)
-    return [_condition(readings, key, rows) for key, rows in groups.items()]
+    electrolyte, reference = factor(readings.electrolyte), factor(readings.reference)
+    code = combine(electrolyte.codes, temperature, reference.codes, potential)
+    rows = np.arange(len(readings)) if usable is None else np.flatnonzero(usable)
+    if not len(rows):
+        return []
+    order = rows[np.argsort(code[rows], kind="stable")]
+    groups = np.split(order, np.flatnonzero(np.diff(code[order])) + 1)
+    groups.sort(key=lambda group: int(group[0]))
+    return [_condition(readings, _key(readings, temperature, potential, group[0]), group.tolist())
+            for group in groups]  # fmt: skip
+
+
+def _key(
+    readings: Readings, temperature: IntArray, potential: IntArray, row: int
+) -> tuple[str, int, str, int]:
+    return (
+        str(readings.electrolyte[row]), int(temperature[row]),
+        str(readings.reference[row]), int(potential[row]),
+    )  # fmt: skip
 
 
 def _condition(

@@ -16,6 +16,9 @@ TWO_PHASES = -4.0
 """Interaction g [1] at and below which the isotherm has two phases, [1]."""
 
 
+_ROUNDING = 4e-16
+
+
 class IsothermUndefined(ValueError):
     """The interaction parameter gives two phases: no isotherm, no valley."""
 
@@ -42,12 +45,14 @@ def _log_odds_empty(reduced: FloatArray, interaction: float) -> FloatArray:
 
     The right side rises in y for g > -4 and |theta - 1/2| < 1/2 brackets the root in
     [u - |g|/2, u + |g|/2]. A Newton step that leaves the bracket, or is not half as long as
-    the one before (it may run in a cycle), is replaced by the bracket's middle.
+    the one before (it may run in a cycle), is replaced by the bracket's middle. A value whose
+    excess is no larger than the rounding of its terms stays as it is.
     """
     low = reduced - abs(interaction) / 2
     high = reduced + abs(interaction) / 2
     y = reduced.copy()
     last = high - low
+    rounding = _ROUNDING * (np.abs(reduced) + abs(interaction))
     for _ in range(200):
         half = np.tanh(y / 2) / 2  # 1/2 - theta
         excess = y + interaction * half - reduced
@@ -57,6 +62,7 @@ def _log_odds_empty(reduced: FloatArray, interaction: float) -> FloatArray:
         step = y - excess / np.where(slope > 1e-12, slope, 1e-12)
         good = (step >= low) & (step <= high) & (np.abs(step - y) <= last / 2)
         new = np.where(good, step, (low + high) / 2)
+        new = np.where(np.abs(excess) <= rounding + _ROUNDING * np.abs(y), y, new)
         last = np.abs(new - y)
         if np.all(np.abs(new - y) <= 1e-14 * (1 + np.abs(y))):
             return np.asarray(new)
@@ -114,3 +120,24 @@ def valley_resistance(
     """
     y = _log_odds_empty(_reduced(potential_V, E0_V, temperature_K, charge), _defined(interaction))
     return np.asarray(np.asarray(minimum, dtype=np.float64) * np.cosh(y / 2))
+
+
+def log_valley_slopes(
+    potential_V: npt.ArrayLike,
+    E0_V: float,
+    interaction: float,
+    temperature_K: npt.ArrayLike,
+    charge: int = 1,
+) -> tuple[FloatArray, FloatArray, FloatArray]:
+    """Return ln(R_ct/R_min) [1] and its derivatives by E0 [1/V] and by g [1], [1].
+
+    From y + g tanh(y/2)/2 = zF(E - E0)/RT, with h = tanh(y/2)/2 and s = 1 + g(1/4 - h^2):
+    dy/dE0 = -zF/(RT s), dy/dg = -h/s, and d ln cosh(y/2)/dy = h.
+    Raises IsothermUndefined for g <= -4.
+    """
+    g = _defined(interaction)
+    y = _log_odds_empty(_reduced(potential_V, E0_V, temperature_K, charge), g)
+    half = np.tanh(y / 2) / 2
+    ratio = half / (1 + g * (0.25 - half**2))
+    per_volt = charge * FARADAY_CONSTANT / (GAS_CONSTANT * np.asarray(temperature_K, np.float64))
+    return np.log(np.cosh(y / 2)), -ratio * per_volt, -ratio * half

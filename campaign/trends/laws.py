@@ -19,7 +19,7 @@ from dataclasses import dataclass, field
 
 import numpy as np
 
-from campaign.kinetics.frumkin import valley_resistance
+from campaign.kinetics.frumkin import log_valley_slopes, valley_resistance
 from campaign.ledger.readings import FloatArray, IntArray
 from campaign.statistics.estimate import Estimate
 from campaign.statistics.information import aicc
@@ -90,6 +90,13 @@ class _Curves:
             )
         )
         return centred(curve[self.where], self.block)
+
+    def linearised(self, E0_V: float, log_g: float) -> tuple[FloatArray, FloatArray]:
+        """Return the centred valley (n,) and its derivatives by E0 and log_g (n, 2)."""
+        g_4 = math.exp(log_g)
+        columns = log_valley_slopes(self.pairs[0], E0_V, g_4 - 4.0, self.pairs[1], self.charge)
+        curve, by_E0, by_g = (centred(column[self.where], self.block) for column in columns)
+        return curve, np.stack([by_E0, by_g * g_4], axis=1)
 
     def misfits(self, E0_V: FloatArray, g: float) -> FloatArray:
         """Return the sum of squares left by the valley at each E0_V (k,) and one g."""
@@ -179,7 +186,7 @@ def _valley(curves: _Curves) -> _Valley | None:
     """
     at = _start(curves)
     for turn in range(_PLAIN_STEPS + _MIXED_STEPS):
-        shape, jacobian = _linearised(curves, at)
+        shape, jacobian = curves.linearised(*at)
         try:
             step = (
                 np.linalg.lstsq(jacobian, curves.y - shape, rcond=None)[0]
@@ -206,19 +213,11 @@ def _start(curves: _Curves) -> tuple[float, float]:
     return float(grid[int(best.argmin())]), math.log(g + 4.0)
 
 
-def _linearised(curves: _Curves, at: tuple[float, float]) -> tuple[FloatArray, FloatArray]:
-    """Return the centred valley and its derivatives (n, 2) by central differences."""
-    dE, du = 1e-4, 1e-4
-    by_E0 = (curves.shape(at[0] + dE, at[1]) - curves.shape(at[0] - dE, at[1])) / (2 * dE)
-    by_u = (curves.shape(at[0], at[1] + du) - curves.shape(at[0], at[1] - du)) / (2 * du)
-    return curves.shape(*at), np.stack([by_E0, by_u], axis=1)
-
-
 def _with_parameters(
     scores: dict[str, float], curves: _Curves, valley: _Valley, alpha: float
 ) -> Law:
     """Return the valley with intervals of E0 and g from the mixed model linearised there."""
-    shape, jacobian = _linearised(curves, (valley.E0_V, valley.log_g))
+    shape, jacobian = curves.linearised(valley.E0_V, valley.log_g)
     try:
         fitted = curves.fit(curves.y - shape, list(jacobian.T), "REML")
     except NoContrast:

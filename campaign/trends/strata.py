@@ -41,10 +41,16 @@ class Matched:
 
 def factor(values: TextArray) -> Factor:
     """Code a text column; names are in alphabetical order."""
-    names = tuple(sorted(set(values.tolist())))
+    if not len(values):
+        return Factor(np.zeros(0, np.int64), ())
+    # readings come sorted by cell, so most texts are the one before
+    begins = np.concatenate([[True], values[1:] != values[:-1]]).astype(np.bool_)
+    starts = np.flatnonzero(begins)
+    firsts = values[starts].tolist()
+    names = tuple(sorted(set(firsts)))
     position = {name: code for code, name in enumerate(names)}
-    codes = np.fromiter((position[value] for value in values), np.int64, len(values))
-    return Factor(codes, names)
+    codes = np.fromiter((position[value] for value in firsts), np.int64, len(firsts))
+    return Factor(np.repeat(codes, np.diff(np.append(starts, len(values)))), names)
 
 
 def match(values: FloatArray, tolerance: float) -> Matched:
@@ -118,6 +124,11 @@ _LARGEST_CODE = 2**40
 
 
 def _compress(codes: IntArray) -> IntArray:
+    size = int(codes.max()) + 1
+    if size <= 16 * len(codes) + 1024:
+        present = np.zeros(size, np.bool_)
+        present[codes] = True
+        return (np.cumsum(present) - 1)[codes]
     return np.unique(codes, return_inverse=True)[1].astype(np.int64)
 
 
