@@ -23,6 +23,9 @@ SLACK_K = 0.6
 SLACK_V = 0.002
 """A set value may lie this far outside the measured ones: they scatter about it."""
 
+EXACT = 1e-6
+"""Rounding of a declared limit [K or V]."""
+
 Span = tuple[float, float]
 NOWHERE: Span = (math.inf, -math.inf)
 
@@ -57,27 +60,49 @@ class Limits:
         measured = _span(
             r.potential_V, (r.electrode == self.electrode) & (r.reference == reference)
         )
-        facts = self.snapshot.electrodes.get(self.electrode)
-        if facts is None:
-            return measured
-        low = _converted(facts.window_low_V, facts.window_reference, reference)
-        high = _converted(facts.window_high_V, facts.window_reference, reference)
-        return (measured[0] if low is None else low, measured[1] if high is None else high)
+        low, high = self._declared_potentials(reference)
+        return (measured[0] if math.isinf(low) else low, measured[1] if math.isinf(high) else high)
 
     def allows(self, electrolyte: str, condition: Condition) -> bool:
-        """Return whether a condition may be proposed."""
-        low, high = self.temperatures(electrolyte)
-        facts = self.snapshot.electrodes.get(self.electrode)
-        declared = facts is not None and facts.maximum_temperature_K is not None
-        slack = 0.0 if declared else SLACK_K
-        if not low - SLACK_K <= condition.temperature_K <= high + slack:
+        """Return whether a condition may be proposed.
+
+        Declared limits hold exactly; measured ranges have the slack their readings scatter by.
+        """
+        T, E = condition.temperature_K, condition.potential_V
+        if not _within(self.temperatures(electrolyte), T, SLACK_K):
             return False
-        if not math.isfinite(condition.potential_V):
+        if not _within(self._declared_temperatures(electrolyte), T, EXACT):
+            return False
+        if not math.isfinite(E):
             return True
-        low, high = self.potentials(condition.reference)
-        window = facts is not None and facts.window_high_V is not None
-        slack = 1e-9 if window else SLACK_V
-        return low - slack <= condition.potential_V <= high + slack
+        if not _within(self.potentials(condition.reference), E, SLACK_V):
+            return False
+        return _within(self._declared_potentials(condition.reference), E, EXACT)
+
+    def _declared_temperatures(self, electrolyte: str) -> Span:
+        facts = self.snapshot.electrodes.get(self.electrode)
+        known = self.snapshot.electrolytes.get(electrolyte)
+        highs = [
+            facts.maximum_temperature_K if facts else None,
+            known.maximum_temperature_K if known else None,
+        ]
+        low = known.minimum_temperature_K if known else None
+        return (
+            -math.inf if low is None else low,
+            min((one for one in highs if one is not None), default=math.inf),
+        )
+
+    def _declared_potentials(self, reference: str) -> Span:
+        facts = self.snapshot.electrodes.get(self.electrode)
+        if facts is None:
+            return -math.inf, math.inf
+        low = _converted(facts.window_low_V, facts.window_reference, reference)
+        high = _converted(facts.window_high_V, facts.window_reference, reference)
+        return (-math.inf if low is None else low, math.inf if high is None else high)
+
+
+def _within(span: Span, value: float, slack: float) -> bool:
+    return span[0] - slack <= value <= span[1] + slack
 
 
 def _span(values: FloatArray, rows: BoolArray) -> Span:

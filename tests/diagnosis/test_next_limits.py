@@ -47,6 +47,14 @@ def test_a_declared_temperature_limit_holds_to_the_degree():
     assert limits.temperatures("0.1 mol/L NaPF6 in PC") == (278.15, 318.15)
 
 
+def test_a_set_temperature_may_lie_a_little_outside_what_it_was_measured_as():
+    rows = made.rows(concentrations=(1.0,))
+    for row in rows:
+        row["temperature_K"] -= 0.3
+    limits = Limits(made.snapshot(rows, maximum_temperature_K=330.0), "film")
+    assert limits.allows(PC, at(318.15)) and not limits.allows(PC, at(319.0))
+
+
 def test_a_limit_below_what_was_measured_takes_it_back():
     limits = Limits(made.snapshot(made.rows(), maximum_temperature_K=303.15), "film")
     assert limits.allows(PC, at(298.15)) and not limits.allows(PC, at(318.15))
