@@ -12,8 +12,9 @@ README = (Path(__file__).resolve().parents[2] / "README.md").read_text(encoding=
 
 
 def blocks():
-    """The indented blocks of the README, each as one text."""
-    return re.findall(r"(?:^    .*\n)+", README, re.MULTILINE)
+    """The indented blocks of the README, each as one text; code between fences is none."""
+    unfenced = re.sub(r"^```.*?^```$", "", README, flags=re.MULTILINE | re.DOTALL)
+    return re.findall(r"(?:^    .*\n)+", unfenced, re.MULTILINE)
 
 
 def test_the_flat_table_of_the_readme_is_the_one_that_is_read():

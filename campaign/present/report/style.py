@@ -43,7 +43,8 @@ code { font-size: .85em; overflow-wrap: anywhere; }
 @media print {
   body { font-size: 10pt; max-width: none; padding: 0; }
   nav, th button::after { display: none; }
-  .wide, figure { overflow: visible; } figure svg { min-width: 0; } h2, h3, h4 { break-after: avoid; } tr { break-inside: avoid; }
+  .wide, figure { overflow: visible; } figure svg { min-width: 0; }
+  h2, h3, h4 { break-after: avoid; } tr { break-inside: avoid; }
   a { color: inherit; text-decoration: none; }
 }
 """
