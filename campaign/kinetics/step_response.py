@@ -25,6 +25,8 @@ _REACH = 30.0  # weights beyond e^-30 do not matter
 _SMALL_EXPONENT = 0.7
 _STEP_SMALL = 0.25  # error e^(-2 pi 1.35/0.25), 1.35 the distance of the nearest singularity
 _STEP_LARGE = 0.2  # error e^(-2 pi 1.1/0.2)
+_NEAR_ZERO, _FAR = 0.03, 100.0  # where eight terms of a series are below 1e-13
+_TERMS = 8
 _CHUNK = 4096
 
 
@@ -41,15 +43,44 @@ def mittag_leffler(exponent: npt.ArrayLike, x: npt.ArrayLike) -> FloatArray:
     result = np.where(arguments == 0, 1.0, np.where(np.isposinf(arguments), 0.0, np.nan))
     result[np.isnan(n)] = np.nan
     proper = np.isfinite(n) & np.isfinite(arguments) & (arguments > 0)
+    large = proper & (n > _SMALL_EXPONENT)
+    near, far = arguments <= _NEAR_ZERO, arguments >= _FAR
     for rows, rule in (
-        (proper & (n <= _SMALL_EXPONENT), _small_exponent),
-        (proper & (n > _SMALL_EXPONENT), _large_exponent),
+        (proper & ~large, _small_exponent),
+        (large & near, _power_series),
+        (large & far, _tail),
+        (large & ~near & ~far, _large_exponent),
     ):
         index = np.flatnonzero(rows)
         for start in range(0, index.size, _CHUNK):
             part = index[start : start + _CHUNK]
             result.flat[part] = rule(n.flat[part], np.log(arguments.flat[part]))
     return result
+
+
+def _power_series(n: FloatArray, log_x: FloatArray) -> FloatArray:
+    """Return the first terms of E_n(-x) = sum over k >= 0 of (-x)^k / Gamma(1 + nk), [1]."""
+    from scipy.special import rgamma
+
+    x = np.exp(log_x)
+    total = np.zeros_like(x)
+    for k in reversed(range(_TERMS)):
+        total = rgamma(1 + n * k) - x * total
+    return total
+
+
+def _tail(n: FloatArray, log_x: FloatArray) -> FloatArray:
+    """Return the first terms of E_n(-x) ~ sum over k >= 1 of (-1)^(k-1) x^-k / Gamma(1 - nk), [1].
+
+    What it leaves out falls as exp(x^(1/n) cos(pi/n)), far below rounding here.
+    """
+    from scipy.special import rgamma
+
+    inverse = np.exp(-log_x)
+    total = np.zeros_like(inverse)
+    for k in reversed(range(1, _TERMS + 1)):
+        total = inverse * (rgamma(1 - n * k) - total)
+    return total
 
 
 def _small_exponent(n: FloatArray, log_x: FloatArray) -> FloatArray:

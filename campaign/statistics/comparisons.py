@@ -24,6 +24,7 @@ from typing import Literal
 
 import numpy as np
 
+from campaign.statistics.roots import root
 from campaign.statistics.sums import Array
 
 Family = Literal["single", "tukey", "dunnett", "bonferroni"]
@@ -138,7 +139,6 @@ def _one_factor(matrix: Array) -> Array | None:
 
 def _dunnett_general(alpha: float, df: float, matrix: Array) -> float:
     """Return max |t| for any correlation, by Gaussian integration over s of box probabilities."""
-    from scipy.optimize import brentq
     from scipy.stats import multivariate_t
 
     k = matrix.shape[0]
@@ -156,7 +156,7 @@ def _dunnett_general(alpha: float, df: float, matrix: Array) -> float:
         return low
     if excess(high) <= 0:
         return high
-    return float(brentq(excess, low, high, xtol=1e-5))
+    return root(excess, low, high, xtol=1e-5)
 
 
 def _quantile(
@@ -166,15 +166,13 @@ def _quantile(
 
     The answer lies between the plain and the Bonferroni t quantile.
     """
-    from scipy.optimize import brentq
-
     s, weight = _chi_grid(df)
 
     def excess(c: float) -> float:
         return float(weight @ below(c, s)) - (1 - alpha)
 
     low, high = _student(alpha, df), _student(alpha / comparisons, df)
-    return float(brentq(excess, 0.999 * low, 1.001 * high, xtol=1e-9 * high, rtol=1e-10))
+    return root(excess, 0.999 * low, 1.001 * high, xtol=1e-9 * high, rtol=1e-10)
 
 
 @lru_cache(maxsize=1)

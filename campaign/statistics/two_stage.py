@@ -23,6 +23,7 @@ import numpy as np
 import numpy.typing as npt
 
 from campaign.statistics.design import NoContrast
+from campaign.statistics.roots import root
 from campaign.statistics.sums import Array, Codes
 
 
@@ -126,15 +127,13 @@ def _pooled_sigma(y: Array, x: Array, of: Codes, cell: Codes, given: Array, df: 
         rest = _fit(y, x, of, cell, weight).rest
         return float(weight @ rest**2) - df
 
-    from scipy.optimize import brentq
-
     low = 0.0 if (given > 0).all() else 1e-12 * (mean_square + float(given.max()))
     if excess(low) <= 0:
         return 0.0
     high = mean_square
     while excess(high) > 0:
         high *= 2
-    return math.sqrt(brentq(excess, low, high, xtol=1e-14 * high, rtol=1e-12))
+    return math.sqrt(root(excess, low, high, xtol=1e-14 * high, rtol=1e-12))
 
 
 def _varies(x: Array, cell: Codes) -> npt.NDArray[np.bool_]:

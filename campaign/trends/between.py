@@ -90,8 +90,8 @@ def one_row_a_cell(s: Sample) -> bool:
 
 def moved(s: Sample) -> bool:
     """Return True where a specimen was measured in more than one cell."""
-    pairs = np.unique(np.stack([s.c.specimen, s.c.cell]), axis=1)
-    return bool(len(np.unique(pairs[0])) < pairs.shape[1])
+    pair = np.unique(combine(s.c.specimen, s.c.cell), return_index=True)[1]
+    return bool(s.n_specimens < len(pair))
 
 
 @dataclass(frozen=True)
@@ -137,11 +137,20 @@ def reduced(s: Sample, stratum: IntArray) -> Reduced:
 
 
 def _linked(cell: IntArray, stratum: IntArray) -> IntArray:
-    """Return a code [n], equal for readings whose cells are linked by shared strata."""
-    from scipy.sparse import coo_array
-    from scipy.sparse.csgraph import connected_components
+    """Return a code [n], equal for readings whose cells are linked by shared strata.
 
-    n_cells = int(cell.max()) + 1
-    size = n_cells + int(stratum.max()) + 1
-    graph = coo_array((np.ones(len(cell)), (cell, n_cells + stratum)), shape=(size, size))
-    return np.asarray(connected_components(graph, directed=False)[1], np.int64)[cell]
+    Every cell takes the least label of the cells it shares a stratum with, and then the
+    label's own label, until nothing changes.
+    """
+    first = np.unique(combine(cell, stratum), return_index=True)[1]
+    cells, strata = cell[first], stratum[first]
+    label = np.arange(int(cell.max()) + 1)
+    while True:
+        least = np.full(int(stratum.max()) + 1, len(label))
+        np.minimum.at(least, strata, label[cells])
+        new = label.copy()
+        np.minimum.at(new, cells, least[strata])
+        new = new[new]
+        if (new == label).all():
+            return combine(label[cell].astype(np.int64))
+        label = new

@@ -118,10 +118,11 @@ def _curves(s: Sample) -> _Curves:
         first = np.unique(point, return_index=True)[1]
         y, x_V, T = means(y, point), means(x_V, point), means(T, point)
         block, specimen = block[first], specimen[first]
-    pairs, where = np.unique(np.stack([x_V, T]), axis=1, return_inverse=True)
+    where = combine(*(np.unique(column, return_inverse=True)[1] for column in (x_V, T)))
+    pairs = np.stack([x_V, T])[:, np.unique(where, return_index=True)[1]]
     return _Curves(
         centred(y, block), centred(x_V, block), x_V, block, specimen,
-        max(1, abs(s.c.facts.charge)), s.n_specimens, pairs, where.reshape(-1).astype(np.int64),
+        max(1, abs(s.c.facts.charge)), s.n_specimens, pairs, where,
     )  # fmt: skip
 
 

@@ -25,6 +25,9 @@ def ratios_of(interval: Interval) -> Interval:
     return None if interval is None else (ratio_of(interval[0]), ratio_of(interval[1]))
 
 
+_ATOMS = frozenset((int, str, bool, type(None)))
+
+
 def plain(value: object) -> Any:
     """Return `value` as JSON-ready Python: records as dicts, NaN and infinity as None."""
     if is_dataclass(value) and not isinstance(value, type):
@@ -36,7 +39,7 @@ def plain(value: object) -> Any:
     if isinstance(value, Mapping):
         return {str(key): plain(item) for key, item in value.items()}
     if isinstance(value, (tuple, list)):
-        return [plain(item) for item in value]
+        return [item if type(item) in _ATOMS else plain(item) for item in value]
     if hasattr(value, "tolist"):
         return plain(value.tolist())
     if isinstance(value, float):

@@ -136,8 +136,8 @@ def levels_per_stratum(stratum: IntArray, level: IntArray) -> IntArray:
     """Return for every row [n] the number of distinct levels its stratum holds."""
     if not len(stratum):
         return np.zeros(0, np.int64)
-    pairs = np.unique(np.stack([stratum, level]), axis=1)
-    counts = np.bincount(pairs[0], minlength=int(stratum.max()) + 1)
+    first = np.unique(combine(stratum, level), return_index=True)[1]
+    counts = np.bincount(stratum[first], minlength=int(stratum.max()) + 1)
     return counts[stratum].astype(np.int64)
 
 
