@@ -10,6 +10,7 @@ from __future__ import annotations
 import math
 from collections.abc import Iterator, Sequence
 from contextlib import contextmanager
+from contextvars import ContextVar
 from typing import Any
 
 import matplotlib
@@ -83,13 +84,23 @@ _RC: dict[Any, Any] = {
 }
 
 
+_inside: ContextVar[bool] = ContextVar("inside", default=False)
+
+
 @contextmanager
 def styled() -> Iterator[None]:
     """Draw and save inside this: Matplotlib's own defaults with the settings above."""
-    with matplotlib.rc_context():
-        matplotlib.rcdefaults()
-        matplotlib.rcParams.update(_RC)
+    if _inside.get():  # setting them takes long, and they are set
         yield
+        return
+    token = _inside.set(True)
+    try:
+        with matplotlib.rc_context():
+            matplotlib.rcdefaults()
+            matplotlib.rcParams.update(_RC)
+            yield
+    finally:
+        _inside.reset(token)
 
 
 def sheet(width: str, height_mm: float) -> Figure:

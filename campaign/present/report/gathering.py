@@ -17,6 +17,9 @@ from campaign.trends.results import AxisResult
 if TYPE_CHECKING:
     from sqlalchemy import Connection
 
+    from campaign.diagnosis.summary import EvidenceSource
+    from campaign.diagnosis.wording import Decider
+
 Row = Mapping[str, Any]
 
 AXES = ("concentration", "solvent", "additive", "temperature", "potential", "age")
@@ -79,7 +82,8 @@ def gather(
         electrolytes = [row for row in listed if row["electrolyte"] in used]
         cautions = _cautions(connection, sorted(used))
     labels = sorted(set(taken.readings.electrode.tolist()))
-    explanations = {label: _explained(taken, criteria, label) for label in labels}
+    source = _remembered()
+    explanations = {label: _explained(taken, criteria, label, source) for label in labels}
     proposals = next_steps(db, wanted, Asked(), labels) if labels else None
     return Content(
         written=datetime.now(UTC),
@@ -121,12 +125,31 @@ def _cautions(connection: Connection, recipes: Sequence[str]) -> list[str]:
     return list(cautions(list(dict.fromkeys(names)), own))
 
 
-def _explained(taken: Snapshot, criteria: Criteria, label: str) -> dict[str, Any]:
+def _remembered() -> EvidenceSource:
+    """Return a source of findings that works out none twice for the same readings."""
+    from campaign.diagnosis.lazy import trend_evidence
+
+    known: dict[tuple[str, str, bytes], Mapping[str, Decider]] = {}
+
+    def source(
+        snapshot: Snapshot, criteria: Criteria, electrode: str, response: str
+    ) -> Mapping[str, Decider]:
+        key = (electrode, response, snapshot.readings.measurement.tobytes())
+        if key not in known:
+            known[key] = trend_evidence(snapshot, criteria, electrode, response)
+        return known[key]
+
+    return source
+
+
+def _explained(
+    taken: Snapshot, criteria: Criteria, label: str, source: EvidenceSource
+) -> dict[str, Any]:
     """Return what `explain` tells of an electrode, without its slow trials."""
     from campaign.diagnosis.explain import explain, to_dict
     from campaign.diagnosis.headline import with_headline
 
-    found = explain(taken, criteria, label, robust=False)
+    found = explain(taken, criteria, label, evidence=source, robust=False)
     return with_headline(to_dict(found), taken, criteria, found.diagnosis)
 
 

@@ -65,6 +65,7 @@ def write_report(
 
 def page(content: Content) -> str:
     """Return the page as text."""
+    from campaign.present.figures.style import styled
     from campaign.present.report.style import SCRIPT, STYLE, policy
 
     head = tag(
@@ -75,7 +76,8 @@ def page(content: Content) -> str:
         tag("title", "Campaign report"),
         tag("style", Html(STYLE)),
     )
-    body = tag("body", *_sections(content), tag("script", Html(SCRIPT)))
+    with styled():
+        body = tag("body", *_sections(content), tag("script", Html(SCRIPT)))
     return f"<!doctype html>\n{tag('html', head, body, lang='en')}\n"
 
 
