@@ -139,7 +139,7 @@ def _lines(
     for table in schema.JOURNALLED:
         names = keys(table)
         for row in connection.execute(select(table).order_by(*table.primary_key)).mappings():
-            made.setdefault(row["entry"], []).append(made_line(table.name, dict(row)))
+            made.setdefault(row["entry"], []).append(_line(table.name, dict(row)))
             if row["ended_by"] is not None:
                 line = ended_line(table.name, [row[name] for name in names])
                 ended.setdefault(row["ended_by"], []).append(line)
@@ -147,6 +147,13 @@ def _lines(
                 if number is not None and number not in known:
                     strays.append((table.name, number))
     return made, ended, strays
+
+
+def _line(table: str, row: Row) -> str:
+    try:
+        return made_line(table, row)
+    except ValueError:
+        return f"{table}: a number that is not finite"  # no entry made it: agrees with no digest
 
 
 def _storage(connection: Connection) -> Iterator[Problem]:

@@ -62,6 +62,10 @@ _OPTION = re.compile(r"(?<=[?&])([^=&]*)=([^&]*)")
 _ACCOUNT = re.compile(r"([^/:?#\s]+:)[^/?#\s]*(?=@)")  # of an address without ://
 
 
+# An address that lost its slashes, or its scheme; a file is hardly called so.
+_MISSPELT = re.compile(r"(?:postgres\w*|sqlite)(?:\+\w+)?:|[^/\\:]+:[^/\\]*@", re.IGNORECASE)
+
+
 def without_password(text: str) -> str:
     """Return an address, also a misspelt one, with anything like a password replaced by ***."""
     head, at, host = text.rpartition("@")
@@ -100,7 +104,7 @@ def wait_seconds() -> float:
 def place(given: str | None) -> Place:
     """Return the place named by `--db`, else by CAMPAIGN_DB, else campaign.sqlite here."""
     text = given or os.environ.get(VARIABLE) or DEFAULT_FILE
-    if "://" not in text and text.startswith(("postgres", "sqlite:")) and (":" in text):
+    if "://" not in text and _MISSPELT.match(text):
         raise _unreadable_address()
     if "://" not in text:
         return Place(path=Path(text))
