@@ -186,7 +186,7 @@ def kill_once(campaigns: Campaigns, action: str, draw: random.Random, folder: Pa
         assert state(folder / "campaign.sqlite") == states[-1]
     campaigns.copy(folder)
     process = begin(action, folder)
-    time.sleep(draw.random() * 1.1 * campaigns.took[action])
+    time.sleep(draw.random() * 0.8 * campaigns.took[action])  # the rest is the process's end
     process.send_signal(signal.SIGKILL)
     process.communicate()
     path = folder / "campaign.sqlite"
