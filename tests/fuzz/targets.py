@@ -98,12 +98,13 @@ SEEDS: dict[str, tuple[bytes, ...]] = {
     ),
     "number": (
         b"41.2", b"-0.5e-3", "41.2±0.8".encode(), b"41.2+/-0.8", b"41.2(8)", b"(41.2+/-0.8)e3",
-        b"41,2(8)", b"4.12(8)e1", "−3".encode(), "1 234.5".encode(), b"absent",
+        b"41,2(8)", b"4.12(8)e1", "−3".encode(), b"1 234.5", b"absent",
     ),
     "table": (
         _HEAD + b"A,2026-03-14T09:30+01:00,3.4,25,41.2,fine\n",
         _HEAD.replace(b",", b";") + b"A;2026-03-14 09:30;3,4;25;41,2(8);\n",
-        _FULL + b'E,Na,A,1.1,"1 M NaPF6 in EC:DMC (1:1 v/v)",2026-03-14T09:30Z,3400,298,0.04,absent,0.9\n',
+        _FULL + b'E,Na,A,1.1,"1 M NaPF6 in EC:DMC (1:1 v/v)",2026-03-14T09:30Z,'
+        b"3400,298,0.04,absent,0.9\n",
         _HEAD.replace(b",", b"\t") + "A\t2026-03-14T09:30Z\t3.4\t25\t41.2±0.8\t\n".encode(),
         b"sep=;\n" + _HEAD.replace(b",", b";"),
     ),
