@@ -24,6 +24,7 @@ def export(
 
     Example: campaign export handover
     """
+    from campaign.errors import refused
     from campaign.ledger.database import open_database
 
     database = open_database(db)
@@ -32,6 +33,13 @@ def export(
         from campaign.ledger.package.workbook import write_workbook
 
         counts = write_workbook(database, path)
+    elif path.suffix.lower() in (".csv", ".json", ".xls", ".ods", ".zip", ".db", ".sqlite"):
+        raise refused(
+            f"a campaign is exported into a folder, or a file ending in .xlsx; '{target}' is "
+            "neither",
+            value=target,
+            expected="a new folder, or FILE.xlsx",
+        )
     else:
         from campaign.ledger.package.writing import write_package
 

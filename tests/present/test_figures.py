@@ -200,3 +200,61 @@ def test_verdict_figures_name_every_step_and_verdict(drawn_campaign):
     at = int(np.argmin(abs(np.log(shares.time_s / criteria.working_time_s))))
     assert shares.shares["R_ct"][0][at] == pytest.approx(row["budget"]["R_ct"], abs=0.02)
     assert b"<svg" in content(budget_figure([shares], "one"), "svg")
+
+
+@pytest.mark.parametrize("axis", [*AXES, "solvent", "additive"])
+def test_text_plots_fit_100_columns_and_name_each_series(drawn_campaign, axis):
+    from importlib import import_module
+
+    from campaign.present.plotting import trend_plot
+
+    snapshot, criteria = drawn_campaign
+    if axis in AXES:
+        result, found = curves(axis, snapshot, criteria)
+    else:
+        module = import_module(f"campaign.trends.{axis}")
+        result, found = module.estimate(snapshot, criteria), ()
+    text = trend_plot(result, found)
+    assert max(map(len, text.splitlines())) <= 100
+    for one in result.estimates:
+        assert one.electrode in text
+        if not found:
+            assert f"{one.a} / {one.b}"[:20] in text
+    assert text.isascii()
+
+
+def test_a_summary_split_by_solvents_names_them_in_its_figure(drawn_campaign):
+    from campaign.diagnosis.summary import diagnose, to_row
+    from campaign.present.figures.matrix import summary_matrix
+    from campaign.present.figures.saving import content
+
+    snapshot, criteria = drawn_campaign
+    found = diagnose(
+        snapshot, criteria, electrodes=["Prussian white D"], by="solvents", leave_one_out=False
+    )
+    svg = content(summary_matrix([to_row(one) for one in found], "two"), "svg").decode()
+    assert "Prussian white D" in svg and "water" in svg
+
+
+def test_users_text_is_never_set_as_a_formula(drawn_campaign):
+    """A label with dollar signs and what would be a broken formula is drawn as it is."""
+    from dataclasses import replace
+
+    from campaign.present.figures.saving import content
+    from campaign.present.figures.trends import trend_figure
+
+    snapshot, criteria = drawn_campaign
+    label = r"x$^{$_\frac{ %"
+    readings = snapshot.readings
+    renamed = replace(
+        snapshot,
+        readings=replace(
+            readings, electrode=np.where(readings.electrode == "NFM film A", label,
+                                         readings.electrode)
+        ),
+        electrodes={**snapshot.electrodes, label: snapshot.electrodes["NFM film A"]},
+    )  # fmt: skip
+    for axis in AXES:
+        result, found = curves(axis, renamed, criteria)
+        svg = content(trend_figure(result, found, "two"), "svg").decode()
+        assert r"x$^{$_\frac{ %"[:4] in svg

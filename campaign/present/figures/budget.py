@@ -107,7 +107,7 @@ def draw(panel: Axes, one: OverTime, *, labelled: bool) -> None:
     panel.xaxis.set_major_locator(LogLocator(base=10, numticks=12))
     panel.xaxis.set_major_formatter(FuncFormatter(_power))
     panel.xaxis.set_minor_formatter(NullFormatter())
-    panel.set_xlabel("t / s")
+    panel.set_xlabel("$t$ / s")
     if labelled:
         panel.set_ylabel("share of the resistance")
 

@@ -58,7 +58,10 @@ def summary_matrix(rows: Sequence[Row], width: str) -> Figure:
 def _head(row: Row) -> str:
     verdict = row["verdict"] if row["strength"] is None else f"{row['verdict']}, {row['strength']}"
     term = style.SYMBOL.get(row["dominant"], "no term")
-    lines = [literal(line) for line in textwrap.wrap(str(row["electrode"]), 18)]
+    name = " ".join(
+        str(row[key]) for key in ("electrode", "salt", "solvents", "temperature") if key in row
+    )
+    lines = [literal(line) for line in textwrap.wrap(name, 18)]
     return "\n".join([*lines, term, *textwrap.wrap(verdict, 18)])
 
 

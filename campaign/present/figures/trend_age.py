@@ -26,7 +26,7 @@ def draw(result: AxisResult, curves: Sequence[Curve], width: str) -> Figure:
     symbol = style.SYMBOL.get(result.response, result.response)
     for index, ((panel, below), group) in enumerate(zip(rooms, groups, strict=True)):
         _panel(panel, below, group)
-        panel.set_xlabel("t / d")
+        panel.set_xlabel("$t$ / d")
         if index % min(most, len(groups)) == 0:
             panel.set_ylabel(f"{symbol} / {symbol}(new)")
     return figure

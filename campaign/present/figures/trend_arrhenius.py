@@ -39,7 +39,7 @@ def _panel(panel: Axes, below: Axes, group: Sequence[Curve]) -> None:
     inverse = np.concatenate([1000.0 / curve.x for curve in group])
     margin = 0.06 * float(np.ptp(inverse)) or 0.05
     panel.set_xlim(inverse.min() - margin, inverse.max() + margin)
-    panel.set_xlabel("T⁻¹ / (10⁻³ K⁻¹)")
+    panel.set_xlabel(r"$T^{-1}$ / (10⁻³ K⁻¹)")
     panel.xaxis.set_major_locator(MaxNLocator(5))
     spread = float(y.max() / y.min())
     panel.set_ylim(y.min() / spread**0.05, y.max() * spread**0.05)
@@ -85,7 +85,7 @@ def _temperatures(panel: Axes, kelvin: np.ndarray) -> None:
     top.xaxis.set_major_locator(FixedLocator([_inverse(value) for value in kept]))
     top.xaxis.set_minor_locator(NullLocator())
     top.xaxis.set_major_formatter(FuncFormatter(lambda x, _: f"{1000.0 / x - ZERO_CELSIUS_K:.0f}"))
-    top.set_xlabel("ϑ / °C")
+    top.set_xlabel(r"$\vartheta$ / °C")
 
 
 def _inverse(celsius: float) -> float:

@@ -14,12 +14,12 @@ from matplotlib.figure import Figure
 
 from campaign.ledger.readings import FloatArray
 from campaign.present.figures import style
-from campaign.present.figures.words import blend, series_title
+from campaign.present.figures.words import blend, fitted_line, series_title
 from campaign.present.numbers import with_interval
 from campaign.trends.curves import Curve
 from campaign.trends.results import AxisResult, OrderEstimate
 
-BASIS = {"mol/L": "c / (mol L⁻¹)", "mol/kg": "b / (mol kg⁻¹)"}
+BASIS = {"mol/L": "$c$ / (mol L⁻¹)", "mol/kg": "$b$ / (mol kg⁻¹)"}
 MOST_NAMED = 12
 
 
@@ -39,8 +39,8 @@ def draw(result: AxisResult, curves: Sequence[Curve], width: str) -> Figure:
 def _concentration(curve: Curve) -> str:
     estimate = curve.estimate
     if isinstance(estimate, OrderEstimate) and estimate.in_activity:
-        return "activity a"
-    return BASIS.get(estimate.basis, "c")
+        return "activity $a$"
+    return BASIS.get(estimate.basis, "$c$")
 
 
 def _panel(panel: Axes, curve: Curve, *, narrow: bool) -> None:
@@ -59,8 +59,8 @@ def _panel(panel: Axes, curve: Curve, *, narrow: bool) -> None:
     value = with_interval(estimate.order, estimate.order_ci).replace("-", "−")
     word = (estimate.decision or "").split(":")[0]
     title = series_title(estimate.electrode, blend(estimate), panel)
-    between = "\n" if narrow else ", "
-    panel.set_title(f"{title}\nm = {value}{between}{word}", fontsize=6.0 if narrow else 7.0)
+    found = fitted_line(f"m = {value}, {word}", panel)
+    panel.set_title(f"{title}\n{found}", fontsize=6.0 if narrow else 7.0)
     panel.text(
         0.03, 0.03, curve.held, transform=panel.transAxes, ha="left", va="bottom",
         fontsize=5.6, color=style.QUIET,

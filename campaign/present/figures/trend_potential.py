@@ -47,7 +47,7 @@ def _panel(panel: Axes, below: Axes, group: Sequence[Curve]) -> None:
     spread = max(float(y.max() / y.min()), 1.5)
     panel.set_ylim(y.min() / spread**0.12, y.max() * spread**0.12)
     style.plain_log(panel.yaxis, spread)
-    against = f"(E vs {literal(reference)}) / V" if reference else "E / V"
+    against = f"($E$ vs {literal(reference)}) / V" if reference else "$E$ / V"
     panel.set_xlabel(against)
     panel.margins(x=0.06)
     panel.xaxis.set_major_locator(MaxNLocator(5, steps=[1, 2, 5, 10]))

@@ -39,7 +39,19 @@ def wrapped(text: str, width_mm: float) -> str:
 
 def series_title(electrode: str, series: str, panel: Any) -> str:
     """Return a panel's title: the electrode, and below it the series, wrapped to its width."""
-    inches = panel.figure.get_figwidth() / max(1, panel.get_gridspec().ncols)
-    fits = max(16, int(inches * 72 / 4.6) - 4)
+    fits = _room(panel)
     lines = [*textwrap.wrap(literal(electrode), fits), *textwrap.wrap(series, fits)]
     return "\n".join(lines[:3])
+
+
+def fitted_line(text: str, panel: Any) -> str:
+    """Return a line of a panel's title, broken at its last comma where it is too long."""
+    if len(text) <= _room(panel) or ", " not in text:
+        return text
+    return "\n".join(text.rsplit(", ", 1))
+
+
+def _room(panel: Any) -> int:
+    """Return how many characters of a title a panel is wide."""
+    inches = panel.figure.get_figwidth() / max(1, panel.get_gridspec().ncols)
+    return max(16, int(inches * 72 / 4.6) - 4)
