@@ -50,6 +50,8 @@ def prepare(folder: Path) -> None:
     """Make the folders for files done and faulty; raises Refused where that fails."""
     try:
         for name in (DONE, FAULTY):
+            if (folder / name).is_symlink():
+                raise OSError(None, f"its {name} is a link, which could lead anywhere")
             (folder / name).mkdir(exist_ok=True)
     except OSError as error:
         raise refused(

@@ -2,7 +2,7 @@
 
     python tests/benchmarks/killing.py --kills 200 --seed 1
 
-A process imports, amends or upgrades; it says when it is about to begin, and is killed
+A process imports, amends, upgrades or watches a folder; it says when it is about to begin, and is killed
 (SIGKILL) after a random part of the time that the whole takes. Afterwards the campaign must hold
 all of it or nothing, pass its check, and take the same work again. Prints how many kills came
 before, amid and after the work, so that a run that never hits anything shows.
@@ -89,6 +89,13 @@ def child(action: str, folder: Path) -> None:
         with_next_revision(folder)
         say_ready()
         upgrade(path, "tester")
+    elif action == "watch":
+        from campaign.ledger.watching import How, prepare, sweep
+
+        say_ready()
+        prepare(folder / "tables")
+        for taken in sweep(open_database(path), folder / "tables", How(who="tester"), 0.0):
+            assert not taken.faults, taken.faults
     elif action == "amend":
         say_ready()
         for area in ("1.21", "1.22", "1.23"):
@@ -202,12 +209,14 @@ def kill_once(campaigns: Campaigns, action: str, draw: random.Random, folder: Pa
         errors = again.communicate()[1].decode()
         assert again.returncode == 0, errors
         assert state(path) == states[-1]
+    if action == "watch":
+        assert [p.name for p in (folder / "tables" / "done").iterdir()] == ["new.csv"]
     if left == states[-1]:
         return "after"
     return "amid" if hot or left != states[0] else "before"
 
 
-ACTIONS = ("import", "amend", "upgrade")
+ACTIONS = ("import", "amend", "upgrade", "watch")
 
 
 def run(kills: int, seed: int, count: int = 400) -> dict[str, dict[str, int]]:

@@ -198,6 +198,21 @@ def test_a_table_may_be_a_link_but_no_device(stored, tmp_path, campaign):
         assert "there is no file" in said or "is a folder" in said
 
 
+def test_links_in_a_watched_folder_are_not_followed(stored, tmp_path, campaign):
+    watched, outside = tmp_path / "watched", tmp_path / "outside"
+    for folder in (watched, outside):
+        folder.mkdir()
+    (outside / "t.csv").write_bytes((tmp_path / "more.csv").read_bytes())
+    (watched / "t.csv").symlink_to(outside / "t.csv")
+    (watched / "out").symlink_to(outside)
+    assert campaign("watch", watched, "--once", "--db", stored).code == 0
+    assert labels(stored) == ["C1", "C2"]
+    assert (outside / "t.csv").exists() and (watched / "t.csv").is_symlink()
+    (watched / "done").rmdir()
+    (watched / "done").symlink_to(outside)
+    assert "is a link" in campaign("watch", watched, "--once", "--db", stored).sentence
+
+
 # Files ----------------------------------------------------------------------------------------
 
 
