@@ -92,7 +92,7 @@ def correlation(
     """Return the correlation of contrasts, None where a contrast has no standard error."""
     if not all(math.isfinite(one.estimate.se) and one.estimate.se > 0 for one in contrasts):
         return None
-    rows = [fitted.row(names.index(one.a), names.index(one.b)) for one in contrasts]
+    rows = np.array([fitted.row(names.index(one.a), names.index(one.b)) for one in contrasts])
     cov = fitted.fit.mixed.contrasts(rows)[1]
     scale = np.sqrt(cov.diagonal())
     return tuple(tuple(float(x) for x in row) for row in cov / scale[:, None] / scale)

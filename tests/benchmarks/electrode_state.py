@@ -92,7 +92,7 @@ def _snapshot(cells, c, kelvin, potential, half, content, resistance, rng) -> Sn
         configuration=text(["three-electrode"] * n), reference=text(["Ag/AgCl"] * n),
         potential_V=potential, temperature_K=kelvin, ion_content=content, E_half_V=half,
         measured_at=start + rng.permutation(n) * 60.0, assembled_at=start - 3600, cycle=blank,
-        values=values, se={q: blank for q in QUANTITIES},
+        values=values, se=dict.fromkeys(QUANTITIES, blank),
         absent={q: np.zeros(n, bool) for q in QUANTITIES},
     )  # fmt: skip
     known = {recipe: ElectrolyteFacts(recipe) for recipe in dict.fromkeys(recipes)}

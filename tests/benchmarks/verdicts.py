@@ -118,7 +118,7 @@ def simulate(truth: Truth, design: Design, rng: np.random.Generator) -> Snapshot
     return _snapshot(values, cell, kelvin, potential, concentration, blend, start[cell], age)
 
 
-def _slow(truth, concentration, blend, kelvin, potential, age):  # noqa: ANN001, ANN202
+def _slow(truth, concentration, blend, kelvin, potential, age):
     base = 40.0 if truth.term == "sigma_w" else 120.0
     y = math.log(base) - truth.order * np.log(concentration)
     y = y + np.log(np.array(truth.factors))[blend]
@@ -134,7 +134,7 @@ def _slow(truth, concentration, blend, kelvin, potential, age):  # noqa: ANN001,
     return y
 
 
-def _snapshot(values, cell, kelvin, potential, concentration, blend, start, age):  # noqa: ANN001, ANN202
+def _snapshot(values, cell, kelvin, potential, concentration, blend, start, age):
     n = len(cell)
 
     def text(items: Iterable[str]) -> np.ndarray:
@@ -200,15 +200,15 @@ def pooled_word(snapshot: Snapshot, term: str) -> str:
     return judge(Judged(term, lines, assess(candidates(term), lines))).word
 
 
-def _centred(values, codes):  # noqa: ANN001, ANN202
+def _centred(values, codes):
     return values - (np.bincount(codes, values) / np.bincount(codes))[codes]
 
 
-def _anova(y, groups) -> float:  # noqa: ANN001
+def _anova(y, groups) -> float:
     return float(stats.f_oneway(*(y[groups == g] for g in sorted(set(groups.tolist())))).pvalue)
 
 
-def _slopes_differ(x, y, groups) -> float:  # noqa: ANN001
+def _slopes_differ(x, y, groups) -> float:
     names = sorted(set(groups.tolist()))
     x = x - x.mean()
     each = sum(_rss(np.column_stack([np.ones((groups == g).sum()), x[groups == g]]),
@@ -219,7 +219,7 @@ def _slopes_differ(x, y, groups) -> float:  # noqa: ANN001
     return float(stats.f.sf((common - each) / extra / (each / left), extra, left))
 
 
-def _rss(X, y) -> float:  # noqa: ANN001, N803
+def _rss(X, y) -> float:
     residual = y - X @ np.linalg.lstsq(X, y, rcond=None)[0]
     return float(residual @ residual)
 
@@ -247,7 +247,7 @@ def _class(word: str, strength: str | None, right: str) -> str:
     return "lean wrong" if strength == "weak" else "wrong"
 
 
-def tallied(pool, truth, design, campaigns, seed):  # noqa: ANN001, ANN201
+def tallied(pool, truth, design, campaigns, seed):
     """Return the counts over campaigns of one truth, by the program and by pooled lines."""
     seeds = [(seed, k) for k in range(campaigns)]
     ends = list(pool.map(partial(outcome, truth, design), seeds, chunksize=10))
@@ -257,7 +257,7 @@ def tallied(pool, truth, design, campaigns, seed):  # noqa: ANN001, ANN201
 CLASSES = ("right", "lean right", "undetermined", "conflicting", "lean wrong", "wrong")
 
 
-def verdict_table(pool, design, campaigns, seed) -> None:  # noqa: ANN001
+def verdict_table(pool, design, campaigns, seed) -> None:
     """Print one line a truth."""
     head = "".join(f"{name:>14}" for name in CLASSES)
     print(f"{'truth':22}{head}   lines: right wrong | wrong <= 2 %, right >= 90 %")
@@ -291,7 +291,7 @@ def edge_decision(axis: str, truth: Truth, design: Design, seed: tuple[int, ...]
     return str(findings(snapshot, CRITERIA, "film", truth.term)[axis].decision())
 
 
-def edge_table(pool, design, campaigns, seed) -> None:  # noqa: ANN001
+def edge_table(pool, design, campaigns, seed) -> None:
     """Print how often each diagnostic decides at the very edge of its margin."""
     print(f"\n{'at the margin':16}{'unresponsive':>14}{'responds':>12}   <= 5 % and <= 2.5 %")
     for number, (axis, truth) in enumerate(EDGES):
@@ -334,14 +334,14 @@ def stated_word(order: float, factor: float) -> str:
     return judge(Judged("R_ct", decided, assess(candidates("R_ct"), decided))).word
 
 
-def graded_map(pool, campaigns, seed) -> None:  # noqa: ANN001
+def graded_map(pool, campaigns, seed) -> None:
     """Print shares of right, undetermined, lean and wrong over the map's fields."""
     print(
         "\nmap: barrier equal in all solvents, valley in potential; truth from the candidate "
         "table\nshares in %: right/undetermined or conflicting/lean/wrong; * nearer to a margin "
         "than 0.1 in order or a factor 1.25"
     )
-    far, worst = Counter(), 0.0
+    far, far_lines, worst = Counter(), Counter(), 0.0
     for between in (0.10, 0.20, 0.30):
         for cells in (1, 2, 3, 4):
             print(f"\nscatter {between:.0%}, {cells} cells a condition; columns: solvent factor")
@@ -354,10 +354,11 @@ def graded_map(pool, campaigns, seed) -> None:  # noqa: ANN001
                     truth = Truth("", "R_ct", word, order, (1.0, math.sqrt(factor), factor),
                                   valley=True)  # fmt: skip
                     field = int(1e6 * seed + 1e5 * between + 1e3 * cells + 100 * order + number)
-                    ours, _ = tallied(pool, truth, Design(cells, between), campaigns, field)
+                    ours, lines = tallied(pool, truth, Design(cells, between), campaigns, field)
                     near = abs(order - 0.15) < 0.1 - 1e-9 or 1.2 - 1e-9 < factor < 1.875 + 1e-9
                     if not near:
                         far += ours
+                        far_lines += lines
                         worst = max(worst, ours["wrong"] / campaigns)
                     line += f"{_field(ours, campaigns) + ('*' if near else ' '):>18}"
                 print(line, flush=True)
@@ -365,7 +366,8 @@ def graded_map(pool, campaigns, seed) -> None:  # noqa: ANN001
     low, high = exact_interval(far["wrong"], n)
     print(
         f"\nfar from the margins: wrong in {far['wrong']} of {n} campaigns "
-        f"({100 * low:.2f} to {100 * high:.2f} %), worst field {100 * worst:.1f} %"
+        f"({100 * low:.2f} to {100 * high:.2f} %), worst field {100 * worst:.1f} %; straight lines "
+        f"wrong in {far_lines['wrong']} ({100 * far_lines['wrong'] / n:.0f} %)"
     )
 
 

@@ -18,8 +18,11 @@ from campaign.ledger.importing import Choices, import_tables
 from campaign.ledger.starting import start
 from campaign.ledger.withdrawing import withdraw
 
-TABLE = """electrode,ion,cell,area_cm2,reference,electrolyte,measured_at,potential_V,temperature_C,R_sl,R_ct
-film,Na,C1,1.1,Na/Na+,1 M NaPF6 in PC,2026-03-01T10:00Z,3.4,25,absent,41.2
+HEADER = (
+    "electrode,ion,cell,area_cm2,reference,electrolyte,measured_at,potential_V,temperature_C,"
+    "R_sl,R_ct\n"
+)
+TABLE = HEADER + """film,Na,C1,1.1,Na/Na+,1 M NaPF6 in PC,2026-03-01T10:00Z,3.4,25,absent,41.2
 film,Na,C1,1.1,Na/Na+,1 M NaPF6 in PC,2026-03-01T11:00Z,3.5,25,7.1,{R}
 film,Na,C2,1.1,Na/Na+,1 M NaPF6 in EC:DMC (1:1 v/v),2026-03-02T10:00Z,3.4,25,6.9,55.1
 """
