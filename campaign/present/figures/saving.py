@@ -1,4 +1,7 @@
-"""Writing a figure: the same drawing gives the same bytes."""
+"""Writing a figure: the same drawing gives the same bytes.
+
+In a PNG single pixels may differ by one step of 255, as the drawing library rounds.
+"""
 
 from __future__ import annotations
 
