@@ -7,8 +7,10 @@ measurements makes a million rows at a time.
 
 from __future__ import annotations
 
+import gc
 import json
-from collections.abc import Callable, Iterator, Sequence
+from collections.abc import Callable, Iterable, Iterator, Sequence
+from contextlib import contextmanager
 from functools import lru_cache
 from itertools import chain
 from operator import itemgetter
@@ -27,6 +29,21 @@ ROWS_A_STATEMENT = 500
 _text = json.JSONEncoder(ensure_ascii=False).encode
 
 
+@contextmanager
+def many_objects() -> Iterator[None]:
+    """Let very many objects be made without a search for cycles every few thousand of them.
+
+    Rows and cells hold no cycles; the search would look at all of them again and again.
+    """
+    was_on = gc.isenabled()
+    gc.disable()
+    try:
+        yield
+    finally:
+        if was_on:
+            gc.enable()
+
+
 @lru_cache(maxsize=64)
 def stated(table: Table) -> tuple[str, ...]:
     """Return the columns a new row fills, in the table's order, without `entry`."""
@@ -41,33 +58,46 @@ def key_of(table: Table) -> Callable[[Cells], Any]:
 
 
 @lru_cache(maxsize=64)
-def _writers(table: Table) -> tuple[Callable[[Any], str], ...]:
-    """Return what writes a filled cell of each column as canonical text."""
+def _writers(table: Table) -> dict[str, Callable[[Cells], Iterable[str]]]:
+    """Return what writes the filled cells of each column as canonical text."""
     from sqlalchemy import Double, Integer
 
-    def real(number: float) -> str:
-        return float.__repr__(float(number))
+    kinds = {name: table.c[name].type for name in (*stated(table), "entry")}
+    return {
+        name: _reals
+        if isinstance(kind, Double)
+        else _integers
+        if isinstance(kind, Integer)
+        else _texts
+        for name, kind in kinds.items()
+    }
 
-    def writer(kind: object) -> Callable[[Any], str]:
-        if isinstance(kind, Double):
-            return real
-        return int.__repr__ if isinstance(kind, Integer) else _text
 
-    return tuple(writer(table.c[name].type) for name in (*stated(table), "entry"))
+def _reals(cells: Cells) -> Iterable[str]:
+    return map(float.__repr__, map(float, cells))
+
+
+def _integers(cells: Cells) -> Iterable[str]:
+    return map(int.__repr__, cells)
+
+
+def _texts(cells: Cells) -> Iterable[str]:
+    known = {text: _text(text) for text in set(cells)}
+    return map(known.__getitem__, cells)
 
 
 def lines(table: Table, rows: Sequence[Cells]) -> Iterator[str]:
-    """Yield the canonical texts of rows, in their order."""
-    for start in range(0, len(rows), BLOCK):
-        yield from _block(table, rows[start : start + BLOCK])
+    """Return the canonical texts of rows, in their order."""
+    starts = range(0, len(rows), BLOCK)
+    return chain.from_iterable(_block(table, rows[start : start + BLOCK]) for start in starts)
 
 
 def _block(table: Table, rows: Sequence[Cells]) -> Iterator[str]:
     names = (*stated(table), "entry")
     columns = dict(zip(names, zip(*rows, strict=True), strict=True))
-    writers = dict(zip(names, _writers(table), strict=True))
+    writers = _writers(table)
     pieces = [f"[{_text(table.name)},{{"]
-    parts: list[list[str]] = []
+    parts: list[Iterable[str]] = []
     begun = False  # a column that every row fills has been written: commas come before
     for name in sorted(names):
         column, write = columns[name], writers[name]
@@ -77,17 +107,24 @@ def _block(table: Table, rows: Sequence[Cells]) -> Iterator[str]:
             continue
         if empty == 0:
             pieces[-1] += ("," if begun else "") + label
-            after = "" if begun or name == "entry" else ","
+            pieces.append("" if begun or name == "entry" else ",")
             begun = begun or name == "entry"
-            parts.append([write(cell) for cell in column])
-            pieces.append(after)
+            parts.append(write(column))
             continue
         before, after = ("," + label, "") if begun else (label, ",")
-        parts.append(["" if cell is None else before + write(cell) + after for cell in column])
+        parts.append(_with_gaps(column, write, before, after))
         pieces.append("")
     pieces[-1] += "}]"
     template = "%s".join(piece.replace("%", "%%") for piece in pieces)
     return map(template.__mod__, zip(*parts, strict=True))
+
+
+def _with_gaps(
+    column: Cells, write: Callable[[Cells], Iterable[str]], before: str, after: str
+) -> list[str]:
+    """Return the text of each filled cell between two others, and nothing for an empty one."""
+    filled = iter(write(tuple([cell for cell in column if cell is not None])))
+    return ["" if cell is None else f"{before}{next(filled)}{after}" for cell in column]
 
 
 def insert(connection: Connection, table: Table, rows: Sequence[Cells]) -> None:

@@ -7,6 +7,7 @@ from pathlib import Path
 from typing import TYPE_CHECKING
 
 from campaign.errors import refused
+from campaign.ledger.bulk import many_objects
 from campaign.ledger.database import is_file
 from campaign.ledger.settings import zone
 from campaign.ledger.spectra import attach_spectra
@@ -47,7 +48,10 @@ def read_files(
         if path.resolve() in seen:
             raise refused(f"{path} is given twice; give it once", value=path)
         seen.add(path.resolve())
-        table = read_table(path, mapping=rules, decimal=decimal, sheet=sheet, zone=campaign_zone)
+        with many_objects():
+            table = read_table(
+                path, mapping=rules, decimal=decimal, sheet=sheet, zone=campaign_zone
+            )
         table.warnings += attach_spectra(table.rows, path.resolve().parent, _folder(database))
         tables.append(table)
     return tables

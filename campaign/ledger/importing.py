@@ -13,7 +13,7 @@ from typing import TYPE_CHECKING, Any
 from campaign.errors import Fault, Refused
 from campaign.ledger import schema
 from campaign.ledger.book import Book
-from campaign.ledger.bulk import stated
+from campaign.ledger.bulk import many_objects, stated
 from campaign.ledger.flat.rows import settle_area
 from campaign.ledger.instants import format_utc
 from campaign.ledger.journal import Entry, Pen, writing
@@ -98,7 +98,10 @@ def import_tables(
     """Enter the rows of flat tables; raises Refused with every fault, nothing written."""
     choices = choices or Choices()
     outcome = Outcome(dry_run=choices.dry_run)
-    with writing(database, who=who, reason=reason, dry_run=choices.dry_run) as pen:
+    with (
+        many_objects(),
+        writing(database, who=who, reason=reason, dry_run=choices.dry_run) as pen,
+    ):
         book = Book.read(pen)
         faults = [fault for table in tables for fault in table.faults]
         # Rows that lack a column would only repeat what is wrong with the header.
@@ -319,7 +322,7 @@ class _Entering:
         self.outcome.measurements += 1
 
     def _make_fit(self, entry: Entry, row: FlatRow, measurement: int) -> None:
-        values, add = row.values, self.pen.add
+        values = row.values
         number = self.pen.next_id(schema.fit)
         fitted_at = values.get("fitted_at")
         when = (
@@ -327,11 +330,15 @@ class _Entering:
             if fitted_at is None
             else (instant_text(fitted_at), fitted_at.offset_minutes)
         )
-        add(entry, schema.fit, (number, number, measurement, *when, *map(values.get, FIT)))
-        for quantity in IN_ORDER:
-            item = values.get(quantity)
-            if item is not None:
-                add(entry, schema.fitted_value, (number, quantity, item[0], item[1]))
+        cells = (number, number, measurement, *when, *map(values.get, FIT))
+        self.pen.add(entry, schema.fit, cells)
+        self.pen.rows(entry, schema.fitted_value).extend(
+            [
+                (number, quantity, *item)
+                for quantity in IN_ORDER
+                if (item := values.get(quantity)) is not None
+            ]
+        )
 
 
 def _stated_areas(rows: Iterable[FlatRow]) -> dict[str, float]:

@@ -131,9 +131,9 @@ class Pen:
 
     def next_id(self, table: Table) -> int:
         """Return the next free id of a table; safe because the writer holds the lock."""
-        from sqlalchemy import func, select
-
         if table.name not in self._next:
+            from sqlalchemy import func, select
+
             top = self.connection.execute(select(func.max(table.c.id))).scalar()
             self._next[table.name] = (top or 0) + 1
         number = self._next[table.name]
@@ -156,14 +156,15 @@ class Pen:
         return made
 
     def add(self, entry: Entry, table: Table, cells: Cells) -> None:
-        """Add a row that is numbered already: its cells in the order of `bulk.stated`.
+        """Add a row that is numbered already: its cells in the order of `bulk.stated`."""
+        self.rows(entry, table).append(cells)
 
-        For tables of measurements, which make very many rows.
-        """
-        rows = entry.many.get(table.name)
-        if rows is None:
-            rows = entry.many[table.name] = []
-        rows.append(cells)
+    def rows(self, entry: Entry, table: Table) -> list[Cells]:
+        """Return the rows that `add` fills, for tables of which an entry makes very many."""
+        found = entry.many.get(table.name)
+        if found is None:
+            found = entry.many[table.name] = []
+        return found
 
 
 @contextmanager

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import gc
 import string
 
 import pytest
@@ -10,7 +11,7 @@ from hypothesis import strategies as st
 from sqlalchemy import Double, Integer
 
 from campaign.ledger import schema
-from campaign.ledger.bulk import ROWS_A_STATEMENT, key_of, lines, stated
+from campaign.ledger.bulk import ROWS_A_STATEMENT, key_of, lines, many_objects, stated
 from campaign.ledger.journal import keys, made_line
 
 TEXTS = st.text(string.printable + "µΩ±é\u2028😀\\\"%{}", max_size=8)
@@ -58,6 +59,14 @@ def test_rows_are_sorted_by_the_primary_key(table) -> None:
     row = tuple(range(len(names)))
     expected = tuple(names.index(name) for name in keys(table))
     assert key_of(table)(row) == (expected if len(expected) > 1 else expected[0])
+
+
+def test_the_search_for_cycles_goes_on_afterwards() -> None:
+    assert gc.isenabled()
+    with pytest.raises(RuntimeError), many_objects():
+        assert not gc.isenabled()
+        raise RuntimeError
+    assert gc.isenabled()
 
 
 def test_a_statement_stays_below_the_limit_on_parameters() -> None:
