@@ -1,8 +1,8 @@
 """Many rows at once: their canonical text by columns, and their insertion in large statements.
 
-A row is a tuple here, in the order of `stated(table)` and then `entry`. The text of a row is
-the one `journal.made_line` gives; it is put together column by column, because a table of
-measurements makes a million rows at a time.
+A row is a tuple here, in the order of `stated(table)`; its `entry` is given for all. The text
+of a row is the one `journal.made_line` gives; it is put together column by column, because a
+table of measurements makes a million rows at a time.
 """
 
 from __future__ import annotations
@@ -62,7 +62,7 @@ def _writers(table: Table) -> dict[str, Callable[[Cells], Iterable[str]]]:
     """Return what writes the filled cells of each column as canonical text."""
     from sqlalchemy import Double, Integer
 
-    kinds = {name: table.c[name].type for name in (*stated(table), "entry")}
+    kinds = {name: table.c[name].type for name in stated(table)}
     return {
         name: _reals
         if isinstance(kind, Double)
@@ -86,20 +86,26 @@ def _texts(cells: Cells) -> Iterable[str]:
     return map(known.__getitem__, cells)
 
 
-def lines(table: Table, rows: Sequence[Cells]) -> Iterator[str]:
+def lines(table: Table, rows: Sequence[Cells], entry: int) -> Iterator[str]:
     """Return the canonical texts of rows, in their order."""
     starts = range(0, len(rows), BLOCK)
-    return chain.from_iterable(_block(table, rows[start : start + BLOCK]) for start in starts)
+    return chain.from_iterable(
+        _block(table, rows[start : start + BLOCK], entry) for start in starts
+    )
 
 
-def _block(table: Table, rows: Sequence[Cells]) -> Iterator[str]:
-    names = (*stated(table), "entry")
+def _block(table: Table, rows: Sequence[Cells], entry: int) -> Iterator[str]:
+    names = stated(table)
     columns = dict(zip(names, zip(*rows, strict=True), strict=True))
     writers = _writers(table)
     pieces = [f"[{_text(table.name)},{{"]
     parts: list[Iterable[str]] = []
-    begun = False  # a column that every row fills has been written: commas come before
-    for name in sorted(names):
+    begun = False  # the entry, which every row has, has been written: commas come before
+    for name in sorted((*names, "entry")):
+        if name == "entry":
+            pieces[-1] += f'"entry":{entry}'
+            begun = True
+            continue
         column, write = columns[name], writers[name]
         label = f"{_text(name)}:"
         empty = column.count(None)
@@ -107,14 +113,15 @@ def _block(table: Table, rows: Sequence[Cells]) -> Iterator[str]:
             continue
         if empty == 0:
             pieces[-1] += ("," if begun else "") + label
-            pieces.append("" if begun or name == "entry" else ",")
-            begun = begun or name == "entry"
+            pieces.append("" if begun else ",")
             parts.append(write(column))
             continue
         before, after = ("," + label, "") if begun else (label, ",")
         parts.append(_with_gaps(column, write, before, after))
         pieces.append("")
     pieces[-1] += "}]"
+    if not parts:
+        return iter([pieces[0]] * len(rows))
     template = "%s".join(piece.replace("%", "%%") for piece in pieces)
     return map(template.__mod__, zip(*parts, strict=True))
 
@@ -127,20 +134,21 @@ def _with_gaps(
     return ["" if cell is None else f"{before}{next(filled)}{after}" for cell in column]
 
 
-def insert(connection: Connection, table: Table, rows: Sequence[Cells]) -> None:
-    """Insert rows; what a rule refuses is raised as the database reports it."""
-    names = (*stated(table), "entry")
+def insert(connection: Connection, table: Table, rows: Sequence[Cells], entry: int) -> None:
+    """Insert rows of an entry; what a rule refuses is raised as the database reports it."""
+    names = stated(table)
     if connection.dialect.name != "sqlite":
-        connection.execute(table.insert(), [dict(zip(names, row, strict=True)) for row in rows])
+        many = [{**dict(zip(names, row, strict=True)), "entry": entry} for row in rows]
+        connection.execute(table.insert(), many)
         return
-    columns = ",".join(f'"{name}"' for name in names)
-    one = f"({','.join('?' * len(names))})"
+    columns = ",".join(f'"{name}"' for name in (*names, "entry"))
+    one = f"({'?,' * len(names)}{int(entry)})"
     begin = f'INSERT INTO "{table.name}" ({columns}) VALUES '
     whole = len(rows) - len(rows) % ROWS_A_STATEMENT
     if whole:
-        many = begin + ",".join([one] * ROWS_A_STATEMENT)
+        statement = begin + ",".join([one] * ROWS_A_STATEMENT)
         for start in range(0, whole, ROWS_A_STATEMENT):
             block = rows[start : start + ROWS_A_STATEMENT]
-            connection.exec_driver_sql(many, tuple(chain.from_iterable(block)))
+            connection.exec_driver_sql(statement, tuple(chain.from_iterable(block)))
     if whole < len(rows):
         connection.exec_driver_sql(begin + one, list(rows[whole:]))

@@ -233,8 +233,9 @@ class _Entering:
         key = id(row)
         if key not in self._places:
             label, instant = row.values.get("cell"), row.values.get("measured_at")
-            known = label is not None and instant is not None
-            self._places[key] = (label, instant_text(instant)) if known else None
+            self._places[key] = (
+                None if label is None or instant is None else (label, instant_text(instant))
+            )
         return self._places[key]
 
     def _unchanged(self, row: FlatRow) -> bool:

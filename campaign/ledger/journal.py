@@ -201,7 +201,7 @@ def read_head(connection: Connection) -> tuple[int, str] | None:
 def _write(connection: Connection, entry: Entry, who: str, reason: str | None) -> None:
     head = read_head(connection)
     number = head[0] + 1 if head else 1
-    made = _complete(entry, number)
+    made = _complete(entry)
     record = {
         "id": number,
         "at": now(),
@@ -209,7 +209,7 @@ def _write(connection: Connection, entry: Entry, who: str, reason: str | None) -
         "action": entry.action,
         "subject": entry.subject,
         "before": canonical({**entry.before, **ended_summary(entry.ended)}),
-        "after": canonical({**entry.after, **made_summary(made)}),
+        "after": canonical({**entry.after, **made_summary(made, number)}),
         "reason": reason,
         "previous": head[1] if head else FIRST,
     }
@@ -220,10 +220,10 @@ def _write(connection: Connection, entry: Entry, who: str, reason: str | None) -
     for table in schema.JOURNALLED:
         rows = made.get(table.name)
         if rows:
-            insert(connection, table, rows)
+            insert(connection, table, rows, number)
 
 
-def _complete(entry: Entry, number: int) -> dict[str, list[Cells]]:
+def _complete(entry: Entry) -> dict[str, list[Cells]]:
     """Return the rows of an entry, all their columns filled in, sorted by their key."""
     made: dict[str, list[Cells]] = {}
     for table in schema.JOURNALLED:
@@ -232,7 +232,7 @@ def _complete(entry: Entry, number: int) -> dict[str, list[Cells]]:
         rows += entry.many.get(table.name, ())
         if rows:
             rows.sort(key=key_of(table))
-            made[table.name] = [(*row, number) for row in rows]
+            made[table.name] = rows
     return made
 
 
@@ -253,15 +253,15 @@ def _end_rows(
     )
 
 
-def made_summary(made: Mapping[str, Sequence[Cells]]) -> Row:
+def made_summary(made: Mapping[str, Sequence[Cells]], number: int) -> Row:
     """Return the counts and the digest of the rows an entry made ({} when none).
 
-    made: by table, rows sorted by their key, complete with their entry.
+    made: by table, rows sorted by their key; number: of the entry.
     """
     if not made:
         return {}
     texts = chain.from_iterable(
-        lines(table, made[table.name]) for table in schema.JOURNALLED if table.name in made
+        lines(table, made[table.name], number) for table in schema.JOURNALLED if table.name in made
     )
     counts = {name: len(rows) for name, rows in sorted(made.items())}
     return {"made": counts, "made_digest": digest(texts)}

@@ -1,6 +1,6 @@
 """Speed beside what a person would use instead, every figure a ratio of two in one run.
 
-    python tests/benchmarks/speed.py [start] [import] [summary] [growth] [demo]
+    python tests/benchmarks/speed.py [start] [import] [summary] [trials] [growth] [demo]
 
 Everything runs as whole processes, in turns, and is compared by its processor time (user +
 system, as the system counts it for the finished process): on a machine that others use as
@@ -13,6 +13,7 @@ import   100,000 rows (2,000 cells x 50, ten fitted values with their standard e
          indices without checks and triggers
 summary  1,000,000 fitted values against pandas.read_sql of the columns needed and a mean by
          groups, in time and in memory (largest resident set)
+trials   the same where strong verdicts are tried without each specimen in turn
 growth   the time for twice the campaign, from 10,000 to 1,000,000 fitted values
 demo     each step of trends, summary and planning on the demo campaign, in seconds
 """
@@ -137,8 +138,11 @@ HEADERS = (
 )
 
 
-def write_table(path: Path, cells: int) -> None:
-    """Write the flat table of an invented campaign: `cells` cells, 50 rows each."""
+def write_table(path: Path, cells: int, shuffled: bool = False) -> None:
+    """Write the flat table of an invented campaign: `cells` cells, 50 rows each.
+
+    Each cell is measured from the lowest temperature to the highest, or in random order.
+    """
     import numpy as np
 
     rng = np.random.default_rng(SEED)
@@ -162,7 +166,8 @@ def write_table(path: Path, cells: int) -> None:
                 R[arc] = np.exp(log + own[arc] + rng.normal(0.0, 0.03, ROWS_A_CELL))
             R_el = 4.0 / c**0.5 * np.exp(rng.normal(0.0, 0.02, ROWS_A_CELL))
             made = start + np.timedelta64(int(rng.integers(0, 200 * 24)), "h")
-            at = made + np.timedelta64(6, "h") * np.arange(4, 4 + ROWS_A_CELL)
+            turn = rng.permutation(ROWS_A_CELL) if shuffled else np.arange(ROWS_A_CELL)
+            at = made + np.timedelta64(6, "h") * (4 + turn)
             fixed = f"{name},Na,C{number:05d},0.785,Na/Na+,{c:g} M NaPF6 in {blend},{made}+01:00"
             noise = rng.uniform(0.9, 1.1, (4, ROWS_A_CELL))
             for i in range(ROWS_A_CELL):
@@ -176,11 +181,12 @@ def write_table(path: Path, cells: int) -> None:
                 )
 
 
-def made(folder: Path, cells: int) -> tuple[Path, Path]:
+def made(folder: Path, cells: int, shuffled: bool = False) -> tuple[Path, Path]:
     """Return the flat table and the database of a campaign, made where they are missing."""
-    table, database = folder / f"table-{cells}.csv", folder / f"campaign-{cells}.sqlite"
+    name = f"{'shuffled-' if shuffled else ''}{cells}"
+    table, database = folder / f"table-{name}.csv", folder / f"campaign-{name}.sqlite"
     if not table.exists():
-        write_table(table, cells)
+        write_table(table, cells, shuffled)
     if not database.exists():
         spend(campaign("init", "--db", str(database), "--zone", "Europe/Paris"))
         spend(campaign("import", "--db", str(database), str(table)))
@@ -392,6 +398,25 @@ def summary(folder: Path) -> list[Figure]:
     ]  # fmt: skip
 
 
+def trials(folder: Path) -> list[Figure]:
+    """Compare the summary of cells measured in random order, whose verdicts can be strong.
+
+    A strong verdict is tried without each specimen: every trial estimates the axes anew.
+    """
+    figures = []
+    for cells in (CELLS // 16, CELLS // 4):
+        _, database = made(folder, cells, shuffled=True)
+        cpu, _, ours, theirs = compared(
+            lambda database=database: spend(campaign("summary", "--db", str(database))),
+            lambda database=database: spend(python(PLAIN_SUMMARY, str(database))),
+            1,
+        )
+        said = f"{_median_s(ours):.2f} s against {_median_s(theirs):.2f} s"
+        name = f"summary with trials, {cells} specimens"
+        figures.append(Figure(name, cpu, 1.5, "x", said))
+    return figures
+
+
 # Growth ----------------------------------------------------------------------------------------
 
 
@@ -426,7 +451,8 @@ def growth(folder: Path) -> list[Figure]:
             )
         ]  # fmt: skip
         said = ", ".join(f"{t:.2f}" for t in times) + " s for " + ", ".join(map(str, sizes))
-        figures.append(Figure(f"{name}, twice the campaign", max(ratios), 2.2, "x", said + " cells"))
+        said += " cells"
+        figures.append(Figure(f"{name}, twice the campaign", max(ratios), 2.2, "x", said))
     return figures
 
 
@@ -491,6 +517,7 @@ PARTS: dict[str, Callable[[Path], list[Figure]]] = {
     "start": start,
     "import": imported,
     "summary": summary,
+    "trials": trials,
     "growth": growth,
     "demo": demo,
 }

@@ -24,33 +24,33 @@ def _cells(table) -> st.SearchStrategy:
             return st.none() | REALS
         return st.none() | (st.integers(0, 2**60) if isinstance(column.type, Integer) else TEXTS)
 
-    return st.tuples(*(cell(table.c[name]) for name in stated(table)), st.integers(1, 2**31))
+    return st.tuples(*(cell(table.c[name]) for name in stated(table)))
+
+
+def _one_by_one(table, rows, entry: int) -> list[str]:
+    named = [dict(zip(stated(table), row, strict=True)) for row in rows]
+    return [made_line(table.name, {**row, "entry": entry}) for row in named]
 
 
 @pytest.mark.parametrize("table", schema.JOURNALLED, ids=lambda table: table.name)
 def test_lines_by_columns_are_the_lines_of_single_rows(table) -> None:
     @settings(max_examples=40, deadline=None)
-    @given(st.lists(_cells(table), max_size=12))
-    def check(rows) -> None:
-        names = (*stated(table), "entry")
-        one_by_one = [made_line(table.name, dict(zip(names, row, strict=True))) for row in rows]
-        assert list(lines(table, rows)) == one_by_one
+    @given(st.lists(_cells(table), max_size=12), st.integers(1, 2**31))
+    def check(rows, entry) -> None:
+        assert list(lines(table, rows, entry)) == _one_by_one(table, rows, entry)
 
     check()
 
 
 def test_a_whole_number_in_a_column_of_reals_is_written_as_it_is_read_back() -> None:
-    assert list(lines(schema.fitted_value, [(1, "R_ct", 40, 2, 3)])) == [
+    assert list(lines(schema.fitted_value, [(1, "R_ct", 40, 2)], 3)) == [
         '["fitted_value",{"entry":3,"fit":1,"quantity":"R_ct","se":2.0,"value":40.0}]'
     ]
 
 
 def test_lines_do_not_depend_on_where_blocks_end() -> None:
-    rows = [(n, "R_ct", 1.0 + n, None if n % 3 else 0.1, 2) for n in range(12_000)]
-    names = (*stated(schema.fitted_value), "entry")
-    assert list(lines(schema.fitted_value, rows)) == [
-        made_line("fitted_value", dict(zip(names, row, strict=True))) for row in rows
-    ]
+    rows = [(n, "R_ct", 1.0 + n, None if n % 3 else 0.1) for n in range(12_000)]
+    assert list(lines(schema.fitted_value, rows, 2)) == _one_by_one(schema.fitted_value, rows, 2)
 
 
 @pytest.mark.parametrize("table", schema.JOURNALLED, ids=lambda table: table.name)
