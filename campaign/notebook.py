@@ -347,7 +347,7 @@ def _frame(rows: Sequence[Row], index: str | None = None) -> pd.DataFrame:
 
 
 def _unit(name: str) -> str | None:
-    from campaign.ledger.flat.headers import COLUMNS
+    from campaign.ledger.flat.canonical import COLUMNS
 
     base = name.removesuffix("_low").removesuffix("_high")
     if base in _UNITS:

@@ -10,7 +10,7 @@ import typer
 
 from campaign.cli import completing
 from campaign.cli.options import By, Db, Json
-from campaign.ledger.flat.headers import CANONICAL
+from campaign.ledger.flat.canonical import CANONICAL
 
 COMPLETED = ("electrode", "electrolyte", "cell", "specimen", "operator")
 

@@ -24,6 +24,7 @@ CELL = (
     "electrode", "electrolyte", "specimen", "area_cm2", "configuration", "reference",
     "assembled_at",
 )  # fmt: skip
+_GATHERED = (*CELL, *ELECTRODE)
 
 
 @dataclass
@@ -90,7 +91,7 @@ class Resolver:
             label = row.values.get("cell")
             if label is None:
                 continue
-            key = (label, row.faulty, *(row.values.get(n) for n in (*CELL, *ELECTRODE)))
+            key = (label, row.faulty, *map(row.values.get, _GATHERED))
             if key in seen:
                 continue
             seen.add(key)

@@ -7,15 +7,9 @@ from dataclasses import dataclass, field, replace
 from typing import Any
 
 from campaign.errors import Fault
+from campaign.ledger.flat.canonical import COLUMNS
 from campaign.ledger.flat.columns import column_for
-from campaign.ledger.flat.headers import (
-    COLUMNS,
-    Header,
-    HeaderError,
-    read_header,
-    shown,
-    tidy_header,
-)
+from campaign.ledger.flat.headers import Header, HeaderError, read_header, shown, tidy_header
 from campaign.ledger.flat.mapping import TableMapping
 from campaign.ledger.flat.rows import REQUIRED
 from campaign.ledger.flat.values import ValueFault, read_reference

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from campaign.ledger.flat.headers import CANONICAL
+from campaign.ledger.flat.canonical import CANONICAL
 
 EXAMPLE = {
     "electrode": "film A",

@@ -16,7 +16,8 @@ from typing import Any, NamedTuple
 
 from campaign.errors import Refused
 from campaign.ledger.fields import CONFIGURATIONS, clean_text
-from campaign.ledger.flat.headers import COLUMNS, shown
+from campaign.ledger.flat.canonical import COLUMNS
+from campaign.ledger.flat.headers import shown
 from campaign.ledger.quantities import MAY_BE_ABSENT
 
 

@@ -7,8 +7,8 @@ import re
 from collections.abc import Iterable, Mapping
 from typing import IO, Any
 
+from campaign.ledger.flat.canonical import CANONICAL, COLUMNS
 from campaign.ledger.flat.columns import NUMBERS
-from campaign.ledger.flat.headers import CANONICAL, COLUMNS
 
 # A spreadsheet runs a text that begins like this as a formula. Such a text is written with an
 # apostrophe before it, which reading takes off again; so is one that begins with apostrophes and

@@ -10,7 +10,7 @@ from typing import TYPE_CHECKING, Any
 from campaign.errors import refused
 from campaign.ledger import selecting
 from campaign.ledger.filters import Filter
-from campaign.ledger.flat.headers import CANONICAL
+from campaign.ledger.flat.canonical import CANONICAL
 from campaign.ledger.flat.writing import guarded
 
 if TYPE_CHECKING:
