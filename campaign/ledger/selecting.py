@@ -9,7 +9,6 @@ from typing import TYPE_CHECKING, Any
 
 from sqlalchemy import and_, func, select
 
-from campaign.errors import refused
 from campaign.ledger import schema
 from campaign.ledger.fields import ZERO_C
 from campaign.ledger.filters import Filter

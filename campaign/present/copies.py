@@ -19,7 +19,8 @@ def show_copied(word: str, made: Copied, *, as_json: bool) -> None:
             }
         )
         return
-    print(f"{word} at {made.where.shown}: {made.entries} journal entries, {made.rows} rows, checked.")
+    held = f"{made.entries} journal entries, {made.rows} rows"
+    print(f"{word} at {made.where.shown}: {held}, checked.")
     print(f"Journal head: {made.head}")
 
 
