@@ -2,10 +2,10 @@
 
     python tests/benchmarks/killing.py --kills 200 --seed 1
 
-A process imports, amends, upgrades or watches a folder; it says when it is about to begin, and
-is killed (SIGKILL) after a random part of the time that the whole takes. Afterwards the campaign must hold
-all of it or nothing, pass its check, and take the same work again. Prints how many kills came
-before, amid and after the work, so that a run that never hits anything shows.
+A process imports, amends, upgrades or watches a folder; it says when it is about to begin, and is
+killed (SIGKILL) after a random part of the time that the whole takes. Afterwards the campaign
+must hold all of it or nothing, pass its check, and take the same work again. Prints how many
+kills came before, amid and after the work, so that a run that never hits anything shows.
 """
 
 from __future__ import annotations
