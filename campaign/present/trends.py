@@ -156,6 +156,12 @@ def _remarks(content: Row, rows: bool) -> None:
     said: list[str] = list(content["warnings"])
     for row in content["estimates"]:
         said += [f"{_series(row)}: {text}" for text in row["warnings"]]
+        apparent = row.get("apparent")
+        if apparent:
+            said.append(
+                f"{_series(row)}: with {apparent['for_what']}, pores not taken out, it would be "
+                f"{with_interval(apparent['value'], apparent['ci'])}"
+            )
         adjusted = row.get("adjusted")
         if adjusted:
             said.append(

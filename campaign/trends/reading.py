@@ -17,7 +17,7 @@ from campaign.ledger.filters import Filter
 from campaign.ledger.readings import Snapshot
 from campaign.ledger.settings import criteria as stored_criteria
 from campaign.ledger.snapshot import snapshot
-from campaign.trends.results import AxisResult, LeftOut
+from campaign.trends.results import Adjusted, AxisResult, LeftOut, SeriesEstimate
 
 if TYPE_CHECKING:
     from sqlalchemy import Connection
@@ -31,6 +31,9 @@ MORE = {
     "donor": "solvent",
     "together": "potential",
 }
+
+# The axes whose estimate pores distort, and the names of that estimate and its interval.
+ESTIMATE = {"concentration": ("order", "order_ci"), "temperature": ("Ea_kJ_mol", "Ea_ci")}
 
 AXES = ("concentration", "solvent", "additive", "potential", "temperature", "age")
 
@@ -86,10 +89,36 @@ def rebuilt(
     result: AxisResult = module.estimate(
         taken, criteria, response, porous=porous, scale=scale, **chosen
     )
+    if porous and axis in ESTIMATE and any(
+        facts.pore_resistance_ohm_cm2 for facts in taken.electrodes.values()
+    ):
+        as_it_appears = module.estimate(
+            taken, criteria, response, porous=False, scale=scale, **chosen
+        )
+        result = beside_apparent(axis, result, as_it_appears)
     extra = [LeftOut(reason, count) for reason, count in taken.left_out.items()]
     if without:
         extra.append(LeftOut("left out with --without", before - len(taken.readings)))
     return replace(result, left_out=(*result.left_out, *extra))
+
+
+def beside_apparent(axis: str, solved: AxisResult, apparent: AxisResult) -> AxisResult:
+    """Return estimates with those of the apparent R_ct beside them, where the two differ."""
+    value, interval = ESTIMATE[axis]
+    known = {_series_of(one): one for one in apparent.estimates}
+
+    def beside(one: SeriesEstimate) -> SeriesEstimate:
+        other = known.get(_series_of(one))
+        if other is None or getattr(other, value) == getattr(one, value):
+            return one
+        shown = Adjusted("R_ct as it appears", getattr(other, value), getattr(other, interval))
+        return replace(one, apparent=shown)
+
+    return replace(solved, estimates=tuple(beside(one) for one in solved.estimates))
+
+
+def _series_of(one: SeriesEstimate) -> tuple[str, ...]:
+    return one.electrode, one.salt, one.solvents, one.additives, one.basis
 
 
 def _chosen(axis: str, more: Mapping[str, bool]) -> dict[str, bool]:

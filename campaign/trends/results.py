@@ -112,7 +112,8 @@ class SeriesEstimate(Record):
     """What every estimate of one series carries.
 
     rows: record numbers of the measurements used. flagged_se: values whose standard error
-    was taken from the electrode's median. sigma_between, sigma_within [1], of ln R.
+    was taken from the electrode's median. apparent: the same with R_ct of a porous electrode
+    as it appears. sigma_between, sigma_within [1], of ln R.
     """
 
     electrode: str
@@ -131,6 +132,7 @@ class SeriesEstimate(Record):
     left_out: tuple[LeftOut, ...] = ()
     rows: tuple[int, ...] = ()
     adjusted: Adjusted | None = None
+    apparent: Adjusted | None = None
     outliers: tuple[Outlier, ...] = ()
     finding: Finding | None = field(default=None, metadata={"json": False})
 
