@@ -222,7 +222,7 @@ def electrode_facts(connection: Connection, as_of: int | None = None) -> dict[st
     """Return what is recorded of every electrode in force, by label."""
     e, y, p = schema.electrode, schema.electrolyte, schema.plateau
     rows = connection.execute(select(y.c.record, y.c.key).where(in_force(y, as_of)))
-    recipes: dict[int, str] = {record: key for record, key in rows.tuples()}  # noqa: C416
+    recipes = {int(record): str(key) for record, key in rows}
     plateaus: dict[int, list[Plateau]] = {}
     for owner, low, high, reference in connection.execute(
         select(p.c.electrode, p.c.low_V, p.c.high_V, p.c.reference).order_by(p.c.low_V)
