@@ -152,13 +152,33 @@ def budget(
     cannot be had is None and then nothing is shown to be smaller than the largest term.
     """
     time = criteria.working_time_s if time_s is None else time_s
-    area_specific = terms_of(readings)
-    fitted = np.any([np.isfinite(area_specific.values[term]) for term in terms], axis=0)
+    found = budgets(readings, criteria, facts, (time,), terms)
+    return found[0] if found else None
+
+
+@dataclass(frozen=True)
+class _Grounds:
+    """What budgets at all times rest on: the condition, and one row a specimen there.
+
+    specimens: at the condition and, where it has few, at its peers.
+    """
+
+    values: Terms
+    condition: Condition
+    specimens: tuple[Terms, ...]
+
+
+def _grounds(readings: Readings, criteria: Criteria, terms: Sequence[str]) -> _Grounds | None:
+    values = terms_of(readings)
+    fitted = np.any([np.isfinite(values.values[term]) for term in terms], axis=0)
     condition = reference_condition(readings, criteria, fitted)
     if condition is None:
         return None
-    groups = _tables(readings, area_specific, condition, time, facts, terms)
-    return _weigh(readings, area_specific, condition, groups, criteria, facts, time, terms)
+    alike = [condition]
+    if condition.n_specimens < ENOUGH:
+        alike += peers(condition)
+    specimens = tuple(_specimens(readings, values, one) for one in alike)
+    return _Grounds(values, condition, specimens)
 
 
 def _specimens(readings: Readings, values: Terms, condition: Condition) -> Terms:
@@ -196,21 +216,6 @@ def _column_means(columns: FloatArray) -> FloatArray:
     counts = known.sum(axis=0)
     sums = np.where(known, columns, 0.0).sum(axis=0)
     return np.where(counts > 0, sums / np.maximum(counts, 1), np.nan)
-
-
-def _tables(
-    readings: Readings,
-    values: Terms,
-    condition: Condition,
-    time_s: float,
-    facts: ElectrodeFacts | None,
-    terms: Sequence[str],
-) -> list[FloatArray]:
-    """Return the contributions at the condition and, with few specimens, those at its peers."""
-    alike = [condition]
-    if condition.n_specimens < ENOUGH:
-        alike += peers(condition)
-    return [_table(_specimens(readings, values, one), time_s, facts, terms) for one in alike]
 
 
 def _weigh(
@@ -427,5 +432,15 @@ def budgets(
     terms: Sequence[str] = TERMS,
 ) -> tuple[Budget, ...]:
     """Return the budget at several times [s], for a table over time."""
-    found = (budget(readings, criteria, facts, time_s=time, terms=terms) for time in times_s)
+    grounds = _grounds(readings, criteria, terms)
+    if grounds is None:
+        return ()
+    found = []
+    for time in times_s:
+        tables = [_table(one, time, facts, terms) for one in grounds.specimens]
+        found.append(
+            _weigh(
+                readings, grounds.values, grounds.condition, tables, criteria, facts, time, terms
+            )
+        )
     return tuple(one for one in found if one is not None)

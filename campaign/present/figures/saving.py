@@ -33,8 +33,17 @@ def content(figure: Figure, kind: str) -> bytes:
             artist.set_in_layout(False)
     stream = io.BytesIO()
     with styled():
+        _settle_layout(figure)
         figure.savefig(stream, format=kind, dpi=PNG_DPI, metadata=_METADATA[kind])
     return _numbered(stream.getvalue()) if kind == "svg" else stream.getvalue()
+
+
+def _settle_layout(figure: Figure) -> None:
+    """Lay the figure out once, so that saving does not draw it a second time to do so."""
+    engine = figure.get_layout_engine()
+    if engine is not None:
+        engine.execute(figure)
+        figure.set_layout_engine(None)
 
 
 def _numbered(svg: bytes) -> bytes:
