@@ -467,7 +467,8 @@ def test_components_do_not_stand_without_their_electrolyte(ledger):
 
 
 def test_the_journal_is_numbered_and_chained(ledger):
-    number, head = ledger.execute("SELECT id, hash FROM journal ORDER BY id DESC LIMIT 1").fetchone()
+    latest_first = "SELECT id, hash FROM journal ORDER BY id DESC LIMIT 1"
+    number, head = ledger.execute(latest_first).fetchone()
     row = (NOW, "me", "log", "x", None, None, None)
     insert_entry = "INSERT INTO journal VALUES (?, ?, ?, ?, ?, ?, ?, ?, ?, ?)"
     refused(ledger, insert_entry, (number + 2, *row, head, "a" * 64), "without a gap")
