@@ -14,6 +14,7 @@ import sys
 from dataclasses import dataclass
 
 import numpy as np
+from bar import counted
 from scipy.special import stdtrit
 
 from campaign.statistics.coverage import exact_interval
@@ -88,7 +89,7 @@ def run(case: Case, campaigns: int) -> str:
     rng = np.random.default_rng([SEED, CASES.index(case)])
     hits = line_hits = 0
     values, errors, widths, line_widths = [], [], [], []
-    for _ in range(campaigns):
+    for _ in counted(range(campaigns), campaigns, str(CASES.index(case))):
         y, x, specimen, stratum, known = simulate(case, rng)
         try:
             estimate = fit_mixed(y, -x, specimen, stratum, known).contrast([1.0])

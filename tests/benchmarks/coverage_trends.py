@@ -21,6 +21,7 @@ from scipy.special import stdtrit
 
 sys.path.insert(0, str(Path(__file__).parents[1] / "trends"))
 
+from bar import counted
 from simulated_campaign import GAS, simulate, snapshot
 
 from campaign.ledger.criteria import Criteria
@@ -171,7 +172,7 @@ def run(name: str, plan: Plan, answer: Callable[[Sample], Answer], campaigns: in
     rng = np.random.default_rng([SEED, k])
     ours = today = 0
     errors, sizes = [], []
-    for _ in range(campaigns):
+    for _ in counted(range(campaigns), campaigns, name):
         mine, theirs, error, se = answer(plan.draw(rng))
         ours += all(low <= truth <= high for (low, high), truth in mine)
         today += all(low <= truth <= high for (low, high), truth in theirs)

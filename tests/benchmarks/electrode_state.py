@@ -17,6 +17,7 @@ import warnings
 from dataclasses import replace
 
 import numpy as np
+from bar import counted
 
 from campaign.kinetics.frumkin import isotherm_occupancy, valley_resistance
 from campaign.ledger.criteria import Criteria
@@ -144,7 +145,7 @@ def main() -> None:
     for title, how, moving in WAYS:
         rng = np.random.default_rng(given.seed)
         orders, barriers, inside, within, decided = [], [], 0, 0, 0
-        for _ in range(given.campaigns):
+        for _ in counted(range(given.campaigns), given.campaigns, how):
             campaign = recorded(simulate(rng, moving=moving), how)
             (order,) = concentration.estimate(campaign, criteria).estimates
             (barrier,) = temperature.estimate(campaign, criteria).estimates

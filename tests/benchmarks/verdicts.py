@@ -26,6 +26,7 @@ from dataclasses import dataclass, replace
 from functools import partial
 
 import numpy as np
+from bar import counted
 from scipy import stats
 
 from campaign.diagnosis.engine import assess
@@ -250,7 +251,8 @@ def _class(word: str, strength: str | None, right: str) -> str:
 def tallied(pool, truth, design, campaigns, seed):
     """Return the counts over campaigns of one truth, by the program and by pooled lines."""
     seeds = [(seed, k) for k in range(campaigns)]
-    ends = list(pool.map(partial(outcome, truth, design), seeds, chunksize=10))
+    ends = pool.map(partial(outcome, truth, design), seeds, chunksize=10)
+    ends = list(counted(ends, campaigns, truth.name or "field"))
     return Counter(a for a, _ in ends), Counter(b for _, b in ends)
 
 
@@ -296,9 +298,8 @@ def edge_table(pool, design, campaigns, seed) -> None:
     print(f"\n{'at the margin':16}{'unresponsive':>14}{'responds':>12}   <= 5 % and <= 2.5 %")
     for number, (axis, truth) in enumerate(EDGES):
         seeds = [(1000 * seed + 100 + number, k) for k in range(campaigns)]
-        ends = Counter(
-            pool.map(partial(edge_decision, axis, truth, design), seeds, chunksize=10)
-        )
+        decided = pool.map(partial(edge_decision, axis, truth, design), seeds, chunksize=10)
+        ends = Counter(counted(decided, campaigns, axis))
         flat, moved = ends["unresponsive"], ends["responds"] + ends["responds, inverse"]
         met = (
             exact_interval(flat, campaigns)[0] <= 0.05
