@@ -11,6 +11,8 @@ import pytest
 
 PROMPT = re.compile(r"(?:^|\n)\s*(\w+)(?: \[[^\]\n]*\])?: ?$")
 
+PROMPT_LINE = re.compile(r"^\s*(\w+)(?: \[[^\]\n]*\])?: ", re.MULTILINE)
+
 
 @pytest.fixture
 def converse(bench):
@@ -58,6 +60,20 @@ def test_log_asks_for_what_is_missing_and_offers_the_last_measurement(bench, con
     assert (last["cell"], last["potential_V"], last["temperature_C"]) == ("B", 3.4, 25)
     assert (last["R_ct"], last["R_ct_se"], last["R_sl"]) == (61.0, pytest.approx(0.9), "absent")
     assert "R_el" not in last and "R_lat" not in last
+
+
+def test_the_next_potential_of_a_cell_takes_under_ten_key_presses(bench, converse):
+    """The fitted values come from the fitting script; what is typed is the potential."""
+    answers = {"potential_V": "3.45"}
+    fitted = ("--R_el", "4.2", "--R_ct", "58.1(7)")
+    code, shown = converse(("log", *fitted), answers)
+    assert code == 0 and "Logged 1 measurement." in shown
+    asked = PROMPT_LINE.findall(shown)
+    keys = sum(len(answers.get(name, "")) + 1 for name in asked)
+    assert asked == ["cell", "measured_at", "potential_V", "temperature_C"]
+    assert keys < 10
+    last = bench.done("list", "measurements", "--json").json["rows"][-1]
+    assert (last["cell"], last["potential_V"], last["R_ct"]) == ("B", 3.45, 58.1)
 
 
 def test_log_asks_nothing_that_was_given(bench, converse):
