@@ -17,7 +17,7 @@ from campaign.ledger import schema
 from campaign.ledger.checking import check, damage
 from campaign.ledger.database import Database, Place, place, revision
 from campaign.ledger.history import head
-from campaign.ledger.journal import keys
+from campaign.ledger.journal import end_rows, keys
 from campaign.ledger.starting import made_whole, refuse_taken
 
 if TYPE_CHECKING:
@@ -79,7 +79,9 @@ def _replay(origin: Connection, goal: Connection) -> tuple[int, int]:
     for entry in entries:
         goal.execute(schema.journal.insert(), dict(entry))
         for table in reversed(schema.JOURNALLED):
-            _end(goal, table, ended[table.name].get(entry["id"], []), entry["id"])
+            gone = ended[table.name].get(entry["id"], [])
+            found = [tuple(row[name] for name in keys(table)) for row in gone]
+            end_rows(goal, table, found, entry["id"])
         for table in schema.JOURNALLED:
             rows = made[table.name].get(entry["id"])
             if rows:
@@ -94,18 +96,6 @@ def _by_entry(connection: Connection, table: Table, column: str) -> dict[int, li
     for row in connection.execute(query).mappings():
         grouped.setdefault(row[column], []).append(dict(row))
     return grouped
-
-
-def _end(goal: Connection, table: Table, rows: list[Row], number: int) -> None:
-    from sqlalchemy import bindparam, update
-
-    if not rows:
-        return
-    names = keys(table)
-    statement = update(table).values(ended_by=number)
-    for name in names:
-        statement = statement.where(table.c[name] == bindparam(f"key_{name}"))
-    goal.execute(statement, [{f"key_{name}": row[name] for name in names} for row in rows])
 
 
 def _prove_equal(origin: Connection, goal: Connection, where: Place) -> None:

@@ -282,11 +282,11 @@ def no_campaign(where: Place) -> Refused:
     )
 
 
-def open_database(given: str | None) -> Database:
-    """Return the database of an existing campaign of this program's revision.
+def find_campaign(given: str | None) -> tuple[Database, str]:
+    """Return the database of an existing campaign, and its schema revision, old or of now.
 
-    Raises Refused where there is none, where the file is something else, or where its
-    schema is older or newer than this program.
+    Raises Refused where there is none, where the file is something else, or where its schema
+    is newer than this program.
     """
     where = place(given)
     if where.path is not None and not is_file(where.path):
@@ -296,17 +296,28 @@ def open_database(given: str | None) -> Database:
         found = revision(connection)
     if found is None:
         raise no_campaign(where)
-    if found < REVISION:
-        raise refused(
-            f"the campaign at {where.shown} was made by an older version (schema {found}, this "
-            f"program uses {REVISION}); run 'campaign upgrade', which makes a backup first",
-            value=found,
-            expected=REVISION,
-        )
     if found > REVISION:
         raise refused(
             f"the campaign at {where.shown} was made by a newer version (schema {found}, this "
             f"program knows up to {REVISION}); install the newer version of the program",
+            value=found,
+            expected=REVISION,
+        )
+    return database, found
+
+
+def open_database(given: str | None) -> Database:
+    """Return the database of an existing campaign of this program's revision.
+
+    Raises Refused where there is none, where the file is something else, or where its
+    schema is older or newer than this program.
+    """
+    database, found = find_campaign(given)
+    if found < REVISION:
+        raise refused(
+            f"the campaign at {database.where.shown} was made by an older version (schema "
+            f"{found}, this program uses {REVISION}); run 'campaign upgrade', which makes a "
+            "backup first",
             value=found,
             expected=REVISION,
         )

@@ -216,7 +216,7 @@ def _write(connection: Connection, entry: Entry, who: str, reason: str | None) -
     record["hash"] = entry_hash(record)
     connection.execute(schema.journal.insert(), record)
     for table in reversed(schema.JOURNALLED):
-        _end_rows(connection, table, entry.ended.get(table.name, []), number)
+        end_rows(connection, table, entry.ended.get(table.name, []), number)
     for table in schema.JOURNALLED:
         rows = made.get(table.name)
         if rows:
@@ -236,9 +236,10 @@ def _complete(entry: Entry) -> dict[str, list[Cells]]:
     return made
 
 
-def _end_rows(
+def end_rows(
     connection: Connection, table: Table, found: Sequence[tuple[Any, ...]], number: int
 ) -> None:
+    """Let journal entry `number` end the rows with the keys found."""
     from sqlalchemy import bindparam, update
 
     if not found:

@@ -8,7 +8,7 @@ from pathlib import Path
 from campaign.errors import refused
 from campaign.ledger.backing import online_copy
 from campaign.ledger.checking import check, damage
-from campaign.ledger.database import REVISION, Database, no_campaign, place, revision
+from campaign.ledger.database import REVISION, Database, find_campaign
 from campaign.ledger.journal import writing
 from campaign.ledger.starting import made_whole
 
@@ -27,24 +27,10 @@ def upgrade(given: str | None, who: str | None = None) -> Upgraded:
 
     The schema changes and the journal entry about them are one transaction: when anything
     fails, or the process dies, the campaign stands as it was, and the backup is there besides.
-    Raises Refused for a campaign
-    of a newer program, and where the upgraded campaign does not pass its check.
+    Raises Refused for a campaign of a newer program, and where the upgraded campaign does not
+    pass its check.
     """
-    where = place(given)
-    if where.path is not None and not where.path.is_file():
-        raise no_campaign(where)
-    database = Database(where)
-    with database.reading() as connection:
-        found = revision(connection)
-    if found is None:
-        raise no_campaign(where)
-    if found > REVISION:
-        raise refused(
-            f"the campaign at {where.shown} was made by a newer version (schema {found}, this "
-            f"program knows up to {REVISION}); install the newer version of the program",
-            value=found,
-            expected=REVISION,
-        )
+    database, found = find_campaign(given)
     if found == REVISION:
         return Upgraded(found, found, None)
     kept = _backup(database, found)

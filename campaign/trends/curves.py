@@ -10,7 +10,7 @@ from __future__ import annotations
 
 import math
 from collections.abc import Callable, Iterator, Mapping, Sequence
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
 from importlib import import_module
 
 import numpy as np
@@ -24,7 +24,7 @@ from campaign.trends.bases import in_activity
 from campaign.trends.between import BetweenFit, NoContrast
 from campaign.trends.conditions import DAY_s
 from campaign.trends.findings import Contrast
-from campaign.trends.reading import FilterSource, read_campaign
+from campaign.trends.reading import FilterSource, look
 from campaign.trends.results import (
     AgeEstimate,
     AxisResult,
@@ -391,10 +391,13 @@ def read_curves(
     """
     if axis not in AXES:
         return ()
-    taken, criteria = read_campaign(db, wanted)
-    if without:
-        readings = taken.readings
-        named = np.isin(readings.measurement.astype(str), list(without))
-        gone = named | np.isin(readings.specimen.astype(str), list(without))
-        taken = replace(taken, readings=readings.take(~gone))
-    return curves(axis, taken, criteria, response, porous=porous, scale=scale, more=more)[1]
+    looked = look(axis, db, wanted, scale=scale, without=without, more=more)
+    return curves(
+        axis,
+        looked.taken,
+        looked.criteria,
+        response,
+        porous=porous,
+        scale=looked.scale,
+        more=looked.more,
+    )[1]

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Mapping, Sequence
-from dataclasses import replace
+from dataclasses import dataclass, replace
 from importlib import import_module
 from typing import TYPE_CHECKING
 
@@ -45,6 +45,48 @@ def read_campaign(db: str | None, wanted: FilterSource | None = None) -> tuple[S
         return snapshot(connection, asked), stored_criteria(connection, asked.as_of)
 
 
+@dataclass(frozen=True)
+class Looked:
+    """What a trend is rebuilt from, every option read and checked.
+
+    withheld: how many readings `without` left out. more: arguments of the axis alone.
+    """
+
+    taken: Snapshot
+    criteria: Criteria
+    scale: str | None
+    withheld: int
+    more: Mapping[str, bool]
+
+
+def look(
+    axis: str,
+    db: str | None,
+    wanted: FilterSource | None,
+    *,
+    scale: str | None,
+    without: Sequence[str],
+    more: Mapping[str, bool] | None,
+) -> Looked:
+    """Return what the options of `rebuilt` ask to look at. Raises Refused as it does."""
+    chosen = _chosen(axis, more or {})
+    if scale is not None:
+        scale = canonical_reference(scale)
+        if not is_known_reference(scale):
+            raise refused(
+                f"potentials cannot be placed on the scale '{scale}': no reference electrode of "
+                "that name is tabulated",
+                column="scale",
+                value=scale,
+                expected="a reference electrode such as Na/Na+, SHE or Ag/AgCl",
+            )
+    taken, criteria = read_campaign(db, wanted)
+    before = len(taken.readings)
+    if without:
+        taken = _without(taken, without)
+    return Looked(taken, criteria, scale, before - len(taken.readings), chosen)
+
+
 def rebuilt(
     axis: str,
     db: str | None,
@@ -70,35 +112,22 @@ def rebuilt(
             value=axis,
             expected=", ".join(AXES),
         )
-    chosen = _chosen(axis, more or {})
-    if scale is not None:
-        scale = canonical_reference(scale)
-        if not is_known_reference(scale):
-            raise refused(
-                f"potentials cannot be placed on the scale '{scale}': no reference electrode of "
-                "that name is tabulated",
-                column="scale",
-                value=scale,
-                expected="a reference electrode such as Na/Na+, SHE or Ag/AgCl",
-            )
-    taken, criteria = read_campaign(db, wanted)
-    before = len(taken.readings)
-    if without:
-        taken = _without(taken, without)
+    looked = look(axis, db, wanted, scale=scale, without=without, more=more)
+    taken, criteria, scale = looked.taken, looked.criteria, looked.scale
     module = import_module(f"campaign.trends.{axis}")
     result: AxisResult = module.estimate(
-        taken, criteria, response, porous=porous, scale=scale, **chosen
+        taken, criteria, response, porous=porous, scale=scale, **looked.more
     )
     if porous and axis in ESTIMATE and any(
         facts.pore_resistance_ohm_cm2 for facts in taken.electrodes.values()
     ):
         as_it_appears = module.estimate(
-            taken, criteria, response, porous=False, scale=scale, **chosen
+            taken, criteria, response, porous=False, scale=scale, **looked.more
         )
         result = beside_apparent(axis, result, as_it_appears)
     extra = [LeftOut(reason, count) for reason, count in taken.left_out.items()]
     if without:
-        extra.append(LeftOut("left out with --without", before - len(taken.readings)))
+        extra.append(LeftOut("left out with --without", looked.withheld))
     return replace(result, left_out=(*result.left_out, *extra))
 
 
