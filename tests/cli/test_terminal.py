@@ -11,12 +11,13 @@ import pytest
 
 PROMPT = re.compile(r"(?:^|\n)\s*(\w+)(?: \[[^\]\n]*\])?: ?$")
 
-PROMPT_LINE = re.compile(r"^\s*(\w+)(?: \[[^\]\n]*\])?: ", re.MULTILINE)
-
 
 @pytest.fixture
 def converse(bench):
-    """Run a command at a pseudo terminal, answering its prompts; return (code, what it showed)."""
+    """Run a command at a pseudo terminal, answering its prompts; return (code, what it showed).
+
+    `asked` on it names the prompts it answered, in order.
+    """
     names = type(bench).start.__globals__
 
     def run(arguments, answers):
@@ -44,10 +45,12 @@ def converse(bench):
             prompt = PROMPT.search(shown, seen)
             if prompt:
                 seen = len(shown)
+                run.asked.append(prompt[1])
                 os.write(ours, (answers.get(prompt[1], "") + "\n").encode())
         os.close(ours)
         return process.wait(timeout=30), shown
 
+    run.asked = []
     return run
 
 
@@ -68,9 +71,8 @@ def test_the_next_potential_of_a_cell_takes_under_ten_key_presses(bench, convers
     fitted = ("--R_el", "4.2", "--R_ct", "58.1(7)")
     code, shown = converse(("log", *fitted), answers)
     assert code == 0 and "Logged 1 measurement." in shown
-    asked = PROMPT_LINE.findall(shown)
-    keys = sum(len(answers.get(name, "")) + 1 for name in asked)
-    assert asked == ["cell", "measured_at", "potential_V", "temperature_C"]
+    keys = sum(len(answers.get(name, "")) + 1 for name in converse.asked)
+    assert converse.asked == ["cell", "measured_at", "potential_V", "temperature_C"]
     assert keys < 10
     last = bench.done("list", "measurements", "--json").json["rows"][-1]
     assert (last["cell"], last["potential_V"], last["R_ct"]) == ("B", 3.45, 58.1)

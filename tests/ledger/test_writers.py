@@ -56,7 +56,7 @@ def test_a_writer_that_fails_half_way_leaves_nothing(bench, make_row, monkeypatc
     def fail(*_):
         raise OSError("no space left on device")
 
-    monkeypatch.setattr(journal, "_end_rows", fail)
+    monkeypatch.setattr(journal, "end_rows", fail)
     try:
         bench.enter(make_row(1))
     except OSError:
